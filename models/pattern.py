@@ -1,0 +1,70 @@
+"""What a model hands over: far fields on the two principal cuts and the power behind them.
+
+Every model here is mirror symmetric in y and in z, so half a cut (0 = boresight, π = rear) is the
+whole. A field f is E_θ·r·e^{jkr} over jη·I/(2π), where I is the dipole's sinusoidal current maximum
+(or the same scale in a solved dipole): a half-wave dipole alone has |f| = 1 broadside. Directivity
+in a direction is |f|²/power; with a radiation resistance R at the same current, power = πR/η.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, replace
+from typing import Final
+
+import numpy as np
+
+from models.conventions import ComplexArray, FloatArray
+
+__all__ = ["CUT_ANGLES", "Pattern"]
+
+CUT_ANGLES: Final[FloatArray] = np.radians(np.arange(0.0, 181.0, 2.0))
+"""Angles off boresight at which models give both cuts, radians, (n_angle,)."""
+
+
+@dataclass(frozen=True, kw_only=True, eq=False)
+class Pattern:
+    """Far fields and terminal quantities of n designs at n_freq frequencies.
+
+    Parameters
+    ----------
+    angles : (n_angle,)
+        Uniform, from 0 (boresight) to π (rear), radians.
+    h_field, e_field : (n, n_freq, n_angle)
+        Complex field on the H- and E-plane cut, normalised as above.
+    power : (n, n_freq)
+        Directivity is abs(field)**2 / power.
+    resistance, reactance : (n, n_freq)
+        Input impedance at the gap, Ω; NaN where the model gives none.
+    efficiency : (n, n_freq)
+        Radiated over accepted power, 0 to 1; NaN where the model gives none.
+    doubt_db : (n, n_freq)
+        The model's own estimate of its error in boresight directivity, dB; NaN where it has none.
+        A design whose doubt is infinite is one the model cannot vouch for.
+    """
+
+    angles: FloatArray
+    h_field: ComplexArray
+    e_field: ComplexArray
+    power: FloatArray
+    resistance: FloatArray
+    reactance: FloatArray
+    efficiency: FloatArray
+    doubt_db: FloatArray
+
+    def rows(self, index: slice | FloatArray | list[int]) -> Pattern:
+        """Return the patterns of the designs at `index`."""
+        return replace(
+            self,
+            **{
+                name: getattr(self, name)[index]
+                for name in (
+                    "h_field",
+                    "e_field",
+                    "power",
+                    "resistance",
+                    "reactance",
+                    "efficiency",
+                    "doubt_db",
+                )
+            },
+        )

@@ -1,0 +1,1 @@
+"""The search: a requirements file in, Pareto fronts and recommended designs out."""
