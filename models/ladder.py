@@ -9,7 +9,7 @@ from typing import Final
 import numpy as np
 from numpy.typing import ArrayLike
 
-from models import images
+from models import images, moment
 from models.build import Build
 from models.conventions import FloatArray
 from models.figures import Figures, Terms, figures_of_merit
@@ -35,6 +35,11 @@ MODELS: Final[dict[str, Model]] = {
         radiate=lambda reflectors, frequencies, _build: images.radiate(reflectors, frequencies),
         summary="image sources, infinite plates, apex angle 180°/n",
         gives_match=False,
+    ),
+    "moment": Model(
+        radiate=moment.radiate,
+        summary="3-D integral equation on both plates and the dipole",
+        gives_match=True,
     ),
 }
 
