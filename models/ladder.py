@@ -9,7 +9,7 @@ from typing import Final
 import numpy as np
 from numpy.typing import ArrayLike
 
-from models import images, moment
+from models import images, modal, moment
 from models.build import Build
 from models.conventions import FloatArray
 from models.figures import Figures, Terms, figures_of_merit
@@ -34,6 +34,11 @@ MODELS: Final[dict[str, Model]] = {
     "image": Model(
         radiate=lambda reflectors, frequencies, _build: images.radiate(reflectors, frequencies),
         summary="image sources, infinite plates, apex angle 180°/n",
+        gives_match=False,
+    ),
+    "modal": Model(
+        radiate=lambda reflectors, frequencies, _build: modal.radiate(reflectors, frequencies),
+        summary="exact mode matching, plates of finite width, endless along the dipole",
         gives_match=False,
     ),
     "moment": Model(
