@@ -181,4 +181,4 @@ def _objective(goal: Goal, sizes: dict[str, FloatArray], figures: Figures) -> Fl
     else:
         values = getattr(figures, _GOAL_FIGURES[goal.name])
     worst = (values if goal.sense == "min" else -values).max(axis=1)
-    return np.nan_to_num(worst, nan=MISSING, posinf=MISSING, neginf=-MISSING)
+    return np.asarray(np.nan_to_num(worst, nan=MISSING, posinf=MISSING, neginf=-MISSING))

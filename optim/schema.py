@@ -18,9 +18,6 @@ from optim.faults import Fault, Source, dotted, shown
 from optim.values import choice, count, mask, near_miss, number, span, title
 
 __all__ = [
-    "GOALS_EITHER",
-    "GOALS_LARGE",
-    "GOALS_SMALL",
     "BandTable",
     "BuildTable",
     "DesignFile",
@@ -182,7 +179,9 @@ class GoalsTable(Table):
     """`[goals]`."""
 
     minimise: list[Annotated[str, choice(*GOALS_SMALL, *GOALS_EITHER)]] | None = None
-    maximise: list[Annotated[str, choice(*GOALS_LARGE, *GOALS_EITHER)]] | None = None
+    maximise: list[Annotated[str, choice(*GOALS_LARGE, *GOALS_EITHER, not_yet="yield")]] | None = (
+        None
+    )
 
 
 class RunTable(Table):
