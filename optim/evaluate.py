@@ -1,0 +1,109 @@
+"""Figures of merit of a whole population: chunks of designs, spread over worker processes.
+
+The size of a chunk never depends on the number of workers, and every chunk is computed with one
+thread of linear algebra, in a worker and in the main process alike: products of matrices of
+another size, or split over threads, differ in the last bits. So one worker and twenty give the
+same figures, bit for bit.
+"""
+
+from __future__ import annotations
+
+import signal
+from collections.abc import Callable
+from contextlib import ExitStack
+from functools import cache
+from types import TracebackType
+from typing import Any, Final, Self
+
+from joblib import Parallel, delayed, parallel_config
+from threadpoolctl import ThreadpoolController
+
+from models import Build, Figures, Reflectors, Terms, evaluate
+from models.conventions import FloatArray
+from optim.requirements import Requirements
+
+__all__ = ["CHUNK", "Evaluator"]
+
+CHUNK: Final = 10
+"""Designs a worker takes at a time."""
+
+
+class Evaluator:
+    """A model, ready to judge populations against what `requirements` asks about.
+
+    Use as a context manager: the workers live inside it and start with the first population.
+
+    Parameters
+    ----------
+    requirements : Requirements
+        Gives the material and the terms of the figures.
+    model : str
+        A name of `models.MODELS`.
+    jobs : int
+        Worker processes, 1 for none beside this one.
+    backend : str
+        A parallel backend that joblib knows; "loky" is processes on this machine.
+    """
+
+    def __init__(
+        self, requirements: Requirements, model: str, jobs: int = 1, *, backend: str = "loky"
+    ) -> None:
+        self.model = model
+        self._build = requirements.build
+        self._terms = requirements.terms
+        self._jobs = jobs
+        self._backend = backend
+        self._exit = ExitStack()
+        self._pool: Parallel | None = None
+
+    def __enter__(self) -> Self:
+        return self
+
+    def __exit__(
+        self,
+        kind: type[BaseException] | None,
+        error: BaseException | None,
+        trace: TracebackType | None,
+    ) -> None:
+        self._exit.__exit__(kind, error, trace)
+        self._pool = None
+
+    def figures(self, reflectors: Reflectors, frequencies: FloatArray) -> Figures:
+        """Return the figures of n designs at n_freq frequencies (Hz), each (n, n_freq)."""
+        designs = reflectors.matrix()
+        chunks = [designs[i : i + CHUNK] for i in range(0, len(designs), CHUNK)]
+        job = (frequencies, self.model, self._build, self._terms)
+        if self._jobs == 1 and self._backend == "loky":
+            return Figures.concatenate([_figures(chunk, *job) for chunk in chunks])
+        pool = self._workers()
+        return Figures.concatenate(list(pool(delayed(_figures)(chunk, *job) for chunk in chunks)))
+
+    def _workers(self) -> Parallel:
+        if self._pool is None:
+            options: dict[str, Any] = {}
+            if self._backend == "loky":
+                options = {"inner_max_num_threads": 1, "initializer": _leave_interrupts_to_main}
+            with parallel_config(self._backend, **options):
+                pool = Parallel(n_jobs=self._jobs, batch_size=1, max_nbytes=None)
+            self._pool = self._exit.enter_context(pool)
+        return self._pool
+
+
+def _figures(
+    designs: FloatArray, frequencies: FloatArray, model: str, build: Build, terms: Terms
+) -> Figures:
+    with _one_thread()():
+        return evaluate(
+            Reflectors.from_matrix(designs), frequencies, model=model, build=build, terms=terms
+        )
+
+
+@cache
+def _one_thread() -> Callable[[], Any]:
+    controller = ThreadpoolController()
+    return lambda: controller.limit(limits=1)
+
+
+def _leave_interrupts_to_main() -> None:
+    """Let Ctrl-C reach the main process only, which then ends its workers."""
+    signal.signal(signal.SIGINT, signal.SIG_IGN)

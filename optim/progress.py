@@ -1,0 +1,88 @@
+"""Progress of a run on stderr: a bar, what has been found so far, and the time left.
+
+On a terminal only; piped or quiet, nothing of it is written. Plain messages go there as well, and
+are left out only when quiet.
+"""
+
+from __future__ import annotations
+
+import sys
+from collections.abc import Callable, Iterator
+from contextlib import contextmanager
+from types import TracebackType
+from typing import Self
+
+from rich.console import Console
+from rich.progress import BarColumn, TextColumn, TimeRemainingColumn
+from rich.progress import Progress as Bars
+
+from optim.referee import Referee
+
+__all__ = ["Progress"]
+
+SQUARE_CENTIMETRES = 1e4
+"""cm² in a square metre."""
+
+
+class Progress:
+    """What the user sees while a search runs.
+
+    Parameters
+    ----------
+    quiet : bool
+        Write nothing at all.
+    """
+
+    def __init__(self, *, quiet: bool = False) -> None:
+        self._console = Console(file=sys.stderr, quiet=quiet, highlight=False)
+        self._bars = Bars(
+            TextColumn("{task.description}"),
+            BarColumn(bar_width=20),
+            TextColumn("generation {task.completed:.0f} of {task.total:.0f}"),
+            TextColumn("{task.fields[found]}"),
+            TimeRemainingColumn(compact=True),
+            console=self._console,
+            disable=quiet or not self._console.is_terminal,
+            transient=True,
+            refresh_per_second=4,
+        )
+
+    def __enter__(self) -> Self:
+        self._bars.start()
+        return self
+
+    def __exit__(
+        self,
+        kind: type[BaseException] | None,
+        error: BaseException | None,
+        trace: TracebackType | None,
+    ) -> None:
+        self._bars.stop()
+
+    def say(self, message: str) -> None:
+        """Write a message on a line of its own."""
+        self._console.print(message, markup=False, soft_wrap=True)
+
+    @contextmanager
+    def stage(self, name: str, generations: int) -> Iterator[Callable[[Referee], None]]:
+        """Show a bar of `generations` steps; call what it gives after each of them."""
+        task = self._bars.add_task(name, total=generations, found="")
+
+        def told(referee: Referee) -> None:
+            if not self._bars.disable:
+                self._bars.update(task, advance=1, found=found(referee))
+
+        yield told
+        self._bars.remove_task(task)
+
+
+def found(referee: Referee) -> str:
+    """Return in a few words what a stage has found so far."""
+    archive = referee.archive
+    if not len(archive.front):
+        return f"{len(archive)} designs, none meets everything yet"
+    smallest = referee.space.reflectors(archive.front.designs).frontal_area.min()
+    return (
+        f"{len(archive)} designs, {archive.feasible} meet everything, "
+        f"smallest {smallest * SQUARE_CENTIMETRES:.0f} cm²"
+    )

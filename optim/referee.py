@@ -1,0 +1,97 @@
+"""Judging designs: from the journal while it lasts, then by a model; never the same one twice."""
+
+from __future__ import annotations
+
+import numpy as np
+
+from models import Figures
+from models.conventions import FloatArray
+from optim.archive import Archive, Judged
+from optim.evaluate import Evaluator
+from optim.journal import Journal
+from optim.margins import Judge
+from optim.space import DesignSpace
+
+__all__ = ["Referee", "columns"]
+
+
+class Referee:
+    """One model judging one stage of a search on one grid of frequencies.
+
+    Parameters
+    ----------
+    stage : str
+        Its name in the journal.
+    space : DesignSpace
+    rules : Judge
+        Turns figures into margins and objectives.
+    evaluator : Evaluator
+    frequencies : (n_freq,)
+        Hz.
+    journal : Journal
+    """
+
+    def __init__(
+        self,
+        stage: str,
+        space: DesignSpace,
+        rules: Judge,
+        evaluator: Evaluator,
+        frequencies: FloatArray,
+        journal: Journal,
+    ) -> None:
+        self.stage = stage
+        self.space = space
+        self.model = evaluator.model
+        self.labels = [limit.label for limit in rules.limits]
+        self._rules = rules
+        self.archive = Archive(Judged.none(space.low.size, self.sizes))
+        self._evaluator = evaluator
+        self._frequencies = frequencies
+        self._journal = journal
+
+    @property
+    def sizes(self) -> tuple[int, int, int, int]:
+        """Numbers of objectives, margins, violations and figures of a judged design."""
+        rules = self._rules
+        return (
+            len(rules.requirements.goals),
+            len(rules.limits),
+            len(rules.constraints),
+            len(Figures.names()),
+        )
+
+    def judge(self, designs: FloatArray) -> Judged:
+        """Return n snapped designs (n, n_var) judged; those not yet known are evaluated."""
+        keys = [row.tobytes() for row in designs]
+        first = {key: i for i, key in reversed(list(enumerate(keys)))}
+        new = sorted(i for key, i in first.items() if key not in self.archive)
+        if new:
+            self.archive.add(self._evaluated(designs[new]))
+        return self.archive.find(keys)
+
+    def _evaluated(self, designs: FloatArray) -> Judged:
+        recorded = self._journal.replay(self.stage, designs)
+        if recorded is not None:
+            return Judged.from_numbers(designs, recorded, self.sizes)
+        reflectors, rules = self.space.reflectors(designs), self._rules
+        figures = self._evaluator.figures(reflectors, self._frequencies)
+        judged = Judged(
+            designs=designs,
+            objectives=rules.objectives(reflectors, figures),
+            margins=rules.margins(reflectors, figures),
+            violations=rules.violations(reflectors, figures),
+            worst=np.column_stack(list(rules.worst(figures).values())),
+        )
+        self._journal.append(self.stage, designs, judged.numbers())
+        return judged
+
+
+def columns(rules: Judge) -> list[str]:
+    """Return the names of the numbers of a judged design, in order."""
+    return [
+        *(f"goal {goal.name}" for goal in rules.requirements.goals),
+        *(f"margin {limit.label}" for limit in rules.limits),
+        *(f"violation {limit.label}" for limit in rules.constraints),
+        *(f"worst {name}" for name in Figures.names()),
+    ]

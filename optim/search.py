@@ -1,0 +1,340 @@
+"""The search: ask the genetic algorithm, evaluate, record, tell; scout cheaply, then prove.
+
+The scout's model looks at the whole space. What it finds about the requirements, those tightened
+and those relaxed by a step of margin included, is handed to the proving model, and the search goes
+on there for as long as the front moves. The front is then judged on a band grid twice as fine,
+and what fails there makes room for the next best. Where nothing meets the requirements, each limit
+in the way is taken down in turn, to see what lies behind it.
+"""
+
+from __future__ import annotations
+
+from collections import deque
+from dataclasses import dataclass, replace
+from typing import Final
+
+import numpy as np
+from scipy.stats import qmc
+
+from models.conventions import FloatArray
+from optim.archive import Archive, Judged, diverse, nondominated
+from optim.evaluate import Evaluator
+from optim.journal import Journal
+from optim.margins import Judge
+from optim.problem import View, door, genetic, whole
+from optim.progress import Progress
+from optim.referee import Referee
+from optim.requirements import Goal, Requirements
+from optim.space import DesignSpace
+
+__all__ = ["Found", "Standstill", "evolve", "search", "without_match"]
+
+FIRST_SAMPLE: Final = 4
+"""Designs in the scout's first generation, as a multiple of the population."""
+
+MOVED: Final = 0.01
+"""A front has moved if a design on it is ahead of all before by this share of its extent."""
+
+SCOUT_PATIENCE: Final = 12
+PROVE_PATIENCE: Final = 5
+"""Generations within which a front must move for the search to go on."""
+
+PROVE_GENERATIONS: Final = 30
+LEVELS: Final = (-1.0, -0.5, 0.0, 0.5, 1.0)
+"""Violations, in steps of margin, about which designs are handed from scout to prover."""
+
+MOST_ROWS: Final = 200
+"""Designs kept of a front."""
+
+CHECK_ROUNDS: Final = 12
+DOOR_GENERATIONS: Final = 20
+DOOR_POPULATION: Final = 24
+NEAREST: Final = 3
+"""Nearest designs whose violated limits are taken down in turn."""
+
+
+@dataclass(frozen=True, kw_only=True, eq=False)
+class Found:
+    """What a search found.
+
+    Parameters
+    ----------
+    front : Judged
+        Designs that hold on the fine grid and that none of their kind beats, worst values over
+        the fine grid; empty if nothing meets the requirements.
+    known : Judged
+        Everything the deciding model has judged, on the fine grid where it was.
+    model : str
+        That decided.
+    evaluations : dict
+        Designs judged by each model.
+    """
+
+    front: Judged
+    known: Judged
+    model: str
+    evaluations: dict[str, int]
+
+
+def search(
+    requirements: Requirements,
+    space: DesignSpace,
+    *,
+    scout: Evaluator,
+    prove: Evaluator | None,
+    seed: int,
+    journal: Journal,
+    progress: Progress,
+) -> Found:
+    """Return what the search finds; the same for the same seed, whatever the number of workers.
+
+    Parameters
+    ----------
+    requirements : Requirements
+    space : DesignSpace
+    scout, prove : Evaluator
+        The two models; without a second the scout decides.
+    seed : int
+        Of the one random generator.
+    journal : Journal
+        Gives answers while it has them and takes every new one.
+    progress : Progress
+        Is told after every generation.
+    """
+    rng = np.random.default_rng(seed)
+    run, judge = requirements.run, Judge(requirements)
+    coarse, fine = requirements.band.frequencies(), requirements.band.refined().frequencies()
+    decider = prove or scout
+    checking = Referee("check", space, judge, decider, fine, journal)
+    scouting = deciding = Referee("scout", space, judge, scout, coarse, journal)
+    if prove is not None:
+        scout_judge = Judge(without_match(requirements))
+        scouting = Referee("scout", space, scout_judge, scout, coarse, journal)
+        deciding = Referee("prove", space, judge, prove, coarse, journal)
+    evolve(
+        scouting,
+        first_sample(space, FIRST_SAMPLE * run.population, rng),
+        population=run.population,
+        generations=run.generations,
+        patience=SCOUT_PATIENCE,
+        rng=rng,
+        progress=progress,
+    )
+    if prove is not None:
+        evolve(
+            deciding,
+            about_the_limits(scouting.archive, run.population),
+            population=max(run.population // 2, 4),
+            generations=PROVE_GENERATIONS,
+            patience=PROVE_PATIENCE,
+            rng=rng,
+            progress=progress,
+        )
+    front = checked_front(deciding.archive, checking)
+    if not len(front):
+        open_doors(scouting, deciding, rng, progress)
+        front = checked_front(deciding.archive, checking)
+    stages = {scouting.stage: scouting, deciding.stage: deciding, checking.stage: checking}
+    evaluations: dict[str, int] = {}
+    for stage in stages.values():
+        evaluations[stage.model] = evaluations.get(stage.model, 0) + len(stage.archive)
+    return Found(
+        front=front,
+        known=checked(deciding.archive.all, checking.archive),
+        model=decider.model,
+        evaluations=evaluations,
+    )
+
+
+def evolve(
+    referee: Referee,
+    start: FloatArray,
+    *,
+    population: int,
+    generations: int,
+    rng: np.random.Generator,
+    progress: Progress,
+    patience: int | None = None,
+    view: View = whole,
+) -> None:
+    """Let designs breed and be judged by `referee`, whose archive holds the outcome.
+
+    Parameters
+    ----------
+    referee : Referee
+    start : (n_start, n_var)
+        The first generation.
+    population, generations : int
+        Designs a generation, and the most generations after the first.
+    rng : numpy.random.Generator
+    progress : Progress
+    patience : int, optional
+        Stop after so many generations in which the front did not move; None goes on to the end.
+    view : View
+        Objectives and conditions of this search.
+    """
+    rule = Standstill(patience or generations + 1)
+    algorithm = genetic(
+        referee.space,
+        referee.archive,
+        start,
+        population=population,
+        n_goals=view(referee.archive.all)[0].shape[1],
+        rng=rng,
+    )
+    with progress.stage(f"{referee.stage} ({referee.model})", generations + 1) as told:
+        for _ in range(generations + 1):
+            asked = algorithm.ask()
+            if asked is None:
+                return
+            objectives, violation = view(referee.judge(asked.get("X")))
+            asked.set("F", objectives, "G", violation[:, None])
+            algorithm.tell(infills=asked)
+            told(referee)
+            if rule.reached(referee.archive):
+                return
+
+
+class Standstill:
+    """Whether a search has stopped to move for `patience` generations.
+
+    While nothing is feasible, what must move is the least violation.
+    """
+
+    def __init__(self, patience: int) -> None:
+        self._fronts: deque[FloatArray] = deque(maxlen=patience + 1)
+        self._misses: deque[float] = deque(maxlen=patience + 1)
+
+    def reached(self, archive: Archive) -> bool:
+        """Return whether it stands still, after one more generation."""
+        self._fronts.append(archive.front.objectives)
+        self._misses.append(archive.least_violation)
+        if len(self._fronts) < (self._fronts.maxlen or 0):
+            return False
+        if not len(self._fronts[-1]):
+            return self._misses[-1] > (1.0 - MOVED) * self._misses[0]
+        return advance(self._fronts[0], self._fronts[-1]) < MOVED
+
+
+def advance(before: FloatArray, now: FloatArray) -> float:
+    """Return how far a front has moved, as a share of its extent.
+
+    Parameters
+    ----------
+    before, now : (n, n_goals)
+        Objectives, to be minimised.
+
+    Returns
+    -------
+    float
+        The least shift of all of `before` that leaves no design of `now` ahead (the additive
+        ε-indicator of Zitzler et al. 2003); infinite where there was no front before.
+    """
+    if not len(before):
+        return np.inf
+    extent = np.ptp(now, axis=0)
+    scale = np.where(extent > 0.0, extent, np.maximum(np.abs(now[0]), 1e-12))
+    ahead = ((before[:, None, :] - now[None, :, :]) / scale).max(axis=2)
+    return float(ahead.min(axis=0).max())
+
+
+def first_sample(space: DesignSpace, count: int, rng: np.random.Generator) -> FloatArray:
+    """Return designs that fill the space evenly (scrambled Sobol points), (count, n_var)."""
+    points = qmc.Sobol(space.low.size, rng=rng).random_base2(int(np.ceil(np.log2(count))))
+    return np.asarray(space.low + (space.high - space.low) * points[:count])
+
+
+def about_the_limits(archive: Archive, count: int) -> FloatArray:
+    """Return `count` designs for the prover: the fronts with the limits moved both ways.
+
+    The models differ by some share of a step of margin, so the prover's front is the scout's for
+    requirements a little harder or easier than those that were asked for.
+    """
+    judged = archive.all
+    miss = judged.violations.max(axis=1, initial=-np.inf)
+    chosen: set[int] = set()
+    for level in LEVELS:
+        rows = np.flatnonzero(miss <= level)
+        chosen.update(rows[nondominated(judged.objectives[rows])].tolist())
+    rows = np.array(sorted(chosen), dtype=np.intp)
+    rows = rows[diverse(judged.objectives[rows], count)]
+    if len(rows) < count:
+        nearest = np.argsort(judged.total_violation, kind="stable")
+        rows = np.concatenate([rows, nearest[~np.isin(nearest, rows)][: count - len(rows)]])
+    return judged.designs[rows]
+
+
+def checked_front(archive: Archive, checking: Referee) -> Judged:
+    """Return the front of the designs that hold on the fine grid, by their values there.
+
+    What fails is taken out and what then comes to the front is checked in turn.
+    """
+    rivals = archive.all[archive.all.feasible]
+    for _ in range(CHECK_ROUNDS):
+        front = rivals[nondominated(rivals.objectives)]
+        front = front[diverse(front.objectives, MOST_ROWS)]
+        if all(key in checking.archive for key in front.keys):
+            break
+        holds = checking.judge(front.designs).feasible
+        failed = {key for key, good in zip(front.keys, holds, strict=True) if not good}
+        rivals = rivals[[i for i, key in enumerate(rivals.keys) if key not in failed]]
+    front = checking.archive.front
+    return front[diverse(front.objectives, MOST_ROWS)]
+
+
+def checked(judged: Judged, checks: Archive) -> Judged:
+    """Return `judged` with the rows that were checked on the fine grid as they are there."""
+    places = {key: place for place, key in enumerate(judged.keys)}
+    order = np.arange(len(judged))
+    for place, key in enumerate(checks.all.keys):
+        order[places[key]] = len(judged) + place
+    return Judged.concatenate([judged, checks.all])[order]
+
+
+def open_doors(
+    scouting: Referee, deciding: Referee, rng: np.random.Generator, progress: Progress
+) -> None:
+    """Look behind every limit that the nearest designs violate: how nearly can it be met."""
+    known = deciding.archive.all
+    nearest = known[np.argsort(known.total_violation, kind="stable")[:NEAREST]]
+    for limit in np.flatnonzero((nearest.margins < 0.0).any(axis=0)):
+        label = deciding.labels[limit]
+        stages = [deciding] if label not in scouting.labels else [scouting, deciding]
+        start = np.empty((0, known.designs.shape[1]))
+        for referee in dict.fromkeys(stages):
+            view = door(referee.labels.index(label))
+            best = behind(referee.archive.all, view, DOOR_POPULATION)
+            evolve(
+                referee,
+                np.unique(np.concatenate([start, best]), axis=0),
+                population=DOOR_POPULATION,
+                generations=DOOR_GENERATIONS if referee is scouting else DOOR_GENERATIONS // 2,
+                rng=rng,
+                progress=progress,
+                view=view,
+            )
+            start = behind(referee.archive.all, view, DOOR_POPULATION)
+
+
+def behind(judged: Judged, view: View, count: int) -> FloatArray:
+    """Return the `count` designs that meet a door's conditions best, then come nearest to it."""
+    objectives, others = view(judged)
+    return judged.designs[np.lexsort((objectives[:, 0], others))[:count]]
+
+
+def without_match(requirements: Requirements) -> Requirements:
+    """Return the requirements without what only a model with an honest match can judge."""
+    goals = [
+        Goal("gain", "max") if goal.name == "realized_gain" else goal
+        for goal in requirements.goals
+        if goal.name != "vswr"
+    ]
+    return replace(
+        requirements,
+        limits=tuple(
+            limit
+            for limit in requirements.limits
+            if limit.figure not in {"vswr", "realized_gain_dbi"}
+        ),
+        goals=tuple(dict.fromkeys(goals)) or (Goal("frontal_area", "min"),),
+    )
