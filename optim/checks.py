@@ -6,6 +6,7 @@ allowed). Bounds in wavelengths are taken at the middle of the band.
 
 from __future__ import annotations
 
+import math
 from collections.abc import Iterator
 from typing import Final
 
@@ -71,6 +72,7 @@ def design_faults(design: DesignFile) -> Iterator[Complaint]:
             variable = "dipole_" + key.removesuffix("_mm")
             yield from _length(f"dipole.{key}", variable, getattr(design.dipole, key), wavelength)
         yield from _build(design.build, wavelength)
+    yield from _clearance(design)
     thick, other = design.dipole.diameter_mm, design.build.dipole_diameter_mm
     if thick is not None and other is not None and thick != other:
         yield (
@@ -78,6 +80,18 @@ def design_faults(design: DesignFile) -> Iterator[Complaint]:
             shown(other),
             f"left out, or dipole.diameter_mm, {thick:g}",
         )
+
+
+def _clearance(design: DesignFile) -> Iterator[Complaint]:
+    """Find a dipole that touches the plates."""
+    angle, spacing = design.reflector.apex_angle_deg, design.reflector.spacing_mm
+    diameter = design.dipole.diameter_mm
+    if angle is None or spacing is None or diameter is None:
+        return
+    least = diameter / 2.0 / math.sin(math.radians(angle / 2.0))
+    if spacing <= least:
+        allowed = f"a number above {least:.4g}, where the dipole clears the plates"
+        yield "reflector.spacing_mm", shown(spacing), allowed
 
 
 def _missing(name: str, table: Table, keys: tuple[str, ...]) -> Iterator[Complaint]:

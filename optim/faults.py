@@ -110,7 +110,7 @@ def read_toml(path: Path) -> Source:
         with path.open("rb") as stream:
             data = stream.read(MAX_BYTES + 1)
     except FileNotFoundError:
-        refuse("no such file", "a TOML file that exists")
+        refuse("no file", "a TOML file that exists")
     except IsADirectoryError:
         refuse("a folder", "a TOML file")
     except PermissionError:

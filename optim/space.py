@@ -65,7 +65,7 @@ class DesignSpace:
         for column, (lowest, highest) in enumerate(space._counts()):
             if low[column] < high[column] and highest < lowest:
                 key = FILE_KEYS[VARIABLES[column]]
-                notes.append(f"{key}: no whole step lies in the range, its two ends are used")
+                notes.append(f"{key}: no whole step lies in the range, its ends are used")
         return replace(space, derived=(*notes, *_single_values(requirements)))
 
     @property

@@ -1,0 +1,232 @@
+"""The command line: each command is a step that reads, calls and prints, and returns an exit code.
+
+0 done; 1 done, but no design meets the requirements; 2 bad input or usage; 130 interrupted.
+Results go to stdout, progress and messages to stderr.
+"""
+
+from __future__ import annotations
+
+import functools
+import io
+import json
+import os
+import sys
+from collections.abc import Callable, Sequence
+from importlib.metadata import version
+from importlib.resources import files
+from pathlib import Path
+from typing import Annotated, Final, ParamSpec
+
+import typer
+from rich.console import Console
+
+from models import MODELS
+from optim.analysis import Analysis, analyse, as_json, table_of
+from optim.designfile import read_design
+from optim.faults import SpecError
+from optim.overview import overview
+from optim.precheck import findings
+from optim.requirements import default_model, read_requirements
+from optim.space import DesignSpace
+
+__all__ = ["app", "main", "step"]
+
+DONE: Final = 0
+NOT_MET: Final = 1
+BAD_INPUT: Final = 2
+INTERRUPTED: Final = 130
+
+P = ParamSpec("P")
+
+app = typer.Typer(
+    name="apexfront",
+    help="Search engine for corner reflectors: the smallest one that meets a specification.",
+    add_completion=False,
+    no_args_is_help=True,
+    pretty_exceptions_enable=False,
+    rich_markup_mode=None,
+)
+
+
+def step(command: Callable[P, int]) -> Callable[P, None]:
+    """Turn a function that returns an exit code into a command that ends with it.
+
+    What is the user's to mend is one clear message on stderr, never a traceback.
+    """
+
+    @functools.wraps(command)
+    def run(*args: P.args, **kwargs: P.kwargs) -> None:
+        try:
+            code = command(*args, **kwargs)
+            sys.stdout.flush()
+        except SpecError as error:
+            message(str(error))
+            code = BAD_INPUT
+        except KeyboardInterrupt:
+            message("interrupted")
+            code = INTERRUPTED
+        except BrokenPipeError:
+            # The reader of our output has seen enough; keep the interpreter from trying again.
+            os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
+            code = DONE
+        except OSError as error:
+            place = f"{error.filename}: " if error.filename else ""
+            message(f"{place}{error.strerror or error}")
+            code = BAD_INPUT
+        raise typer.Exit(code)
+
+    return run
+
+
+def message(text: str) -> None:
+    """Print `text` on stderr."""
+    print(text, file=sys.stderr)
+
+
+def model_name(value: str | None) -> str | None:
+    """Return the name of a model, or refuse it with the names there are."""
+    if value is None or value in MODELS:
+        return value
+    reason = f"{value!r} given, allowed: {', '.join(MODELS)}"
+    raise typer.BadParameter(reason)
+
+
+def _print_version(value: bool) -> None:
+    if value:
+        print(f"apexfront {version('apexfront')}")
+        raise typer.Exit(DONE)
+
+
+@app.callback()
+def _options(
+    _version: Annotated[
+        bool,
+        typer.Option(
+            "--version", callback=_print_version, is_eager=True, help="Print the version."
+        ),
+    ] = False,
+) -> None:
+    pass
+
+
+@app.command("new")
+@step
+def new(
+    file: Annotated[Path, typer.Argument(help="File to write; must not exist yet.")],
+) -> int:
+    """Write a commented requirements file to start from."""
+    template = files("optim").joinpath("template.toml").read_text(encoding="utf-8")
+    try:
+        with file.open("x", encoding="utf-8", newline="\n") as stream:
+            stream.write(template)
+    except FileExistsError:
+        message(f"{file}: exists already and is left as it is; name a new file")
+        return BAD_INPUT
+    message(f"wrote {file}; next: apexfront check {file}")
+    return DONE
+
+
+@app.command("check")
+@step
+def check(
+    spec: Annotated[Path, typer.Argument(help="Requirements file.")],
+) -> int:
+    """Say how a requirements file is understood, and what physics already rules out."""
+    requirements = read_requirements(spec)
+    space = DesignSpace.from_requirements(requirements)
+    found = findings(requirements, space)
+    print("\n".join(overview(requirements, space, found)))
+    return NOT_MET if any(finding.ruled_out for finding in found) else DONE
+
+
+@app.command("analyse")
+@step
+def analyse_design(
+    design: Annotated[Path, typer.Argument(help="Design file.")],
+    model: Annotated[
+        str | None,
+        typer.Option(
+            metavar="MODEL",
+            callback=model_name,
+            help=f"One of {', '.join(MODELS)}; the most truthful there is if left out.",
+        ),
+    ] = None,
+    out: Annotated[
+        Path | None,
+        typer.Option(metavar="DIR", help="Folder for pictures, drawing and data; made if need be."),
+    ] = None,
+    as_object: Annotated[
+        bool, typer.Option("--json", help="Print one JSON object instead of a table.")
+    ] = False,
+) -> int:
+    """Give the figures of merit of one design over its band."""
+    analysis = analyse(read_design(design), model or default_model("moment", "ray", "image"))
+    if as_object:
+        print(json.dumps(as_json(analysis), indent=2, allow_nan=False))
+    else:
+        _print_analysis(analysis)
+    if out is not None:
+        _write_analysis(analysis, out)
+    return DONE
+
+
+def _print_analysis(analysis: Analysis) -> None:
+    console = Console(markup=False, highlight=False, emoji=False, soft_wrap=True)
+    console.print(analysis.design.title)
+    console.print(f"model {analysis.model}: {MODELS[analysis.model].summary}\n")
+    console.print(table_of(analysis))
+    sizes = analysis.sizes()
+    box = " × ".join(f"{sizes[f'{side}_mm']:.0f}" for side in ("width", "height", "depth"))
+    console.print(
+        f"\nwidth × height × depth {box} mm; frontal area {sizes['frontal_area_m2']:.4f} m², "
+        f"sheet {sizes['sheet_area_m2']:.4f} m², mass {sizes['mass_kg']:.2f} kg"
+    )
+    for warning in analysis.warnings:
+        console.print(f"Note: {warning}")
+
+
+def _write_analysis(analysis: Analysis, folder: Path) -> None:
+    """Write data, cuts, band curves and the drawing of an analysis into `folder`."""
+    from optim.drawing import draw_sheet  # matplotlib is slow to start
+    from optim.plot_band import draw_band
+    from optim.plot_cuts import draw_cuts
+    from optim.style import save
+
+    design, title = analysis.design, analysis.design.title
+    band = design.band.low_hz, design.band.high_hz
+    folder.mkdir(parents=True, exist_ok=True)
+    data = json.dumps(as_json(analysis), indent=2, allow_nan=False)
+    (folder / "analysis.json").write_text(data + "\n", encoding="utf-8")
+    pictures = {
+        "cuts.png": draw_cuts(
+            title=title,
+            pattern=analysis.pattern,
+            frequencies_hz=analysis.frequencies,
+            terms=design.terms,
+            model=analysis.model,
+        ),
+        "band.png": draw_band(
+            title=title,
+            frequencies_hz=analysis.frequencies,
+            figures=analysis.figures,
+            names=[analysis.model],
+        ),
+        "drawing.svg": draw_sheet(design.reflectors, title=title, build=design.build, band_hz=band),
+    }
+    for name, figure in pictures.items():
+        save(figure, folder / name)
+    message(f"wrote analysis.json, {', '.join(pictures)} to {folder}")
+
+
+def main(arguments: Sequence[str] | None = None) -> int:
+    """Run the command line and return its exit code."""
+    for stream in (sys.stdout, sys.stderr):
+        if isinstance(stream, io.TextIOWrapper):
+            stream.reconfigure(errors="replace")
+    try:
+        app(args=None if arguments is None else list(arguments), prog_name="apexfront")
+    except SystemExit as end:
+        return end.code if isinstance(end.code, int) else BAD_INPUT
+    except KeyboardInterrupt:
+        return INTERRUPTED
+    return DONE
