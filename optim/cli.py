@@ -24,6 +24,7 @@ from models import MODELS
 from optim.analysis import Analysis, analyse, as_json, table_of
 from optim.designfile import read_design
 from optim.faults import SpecError
+from optim.journal import JournalError
 from optim.overview import overview
 from optim.precheck import findings
 from optim.requirements import default_model, read_requirements
@@ -59,11 +60,11 @@ def step(command: Callable[P, int]) -> Callable[P, None]:
         try:
             code = command(*args, **kwargs)
             sys.stdout.flush()
-        except SpecError as error:
+        except (SpecError, JournalError) as error:
             message(str(error))
             code = BAD_INPUT
-        except KeyboardInterrupt:
-            message("interrupted")
+        except KeyboardInterrupt as interrupt:
+            message(str(interrupt) or "interrupted")
             code = INTERRUPTED
         except BrokenPipeError:
             # The reader of our output has seen enough; keep the interpreter from trying again.
@@ -89,6 +90,11 @@ def model_name(value: str | None) -> str | None:
         return value
     reason = f"{value!r} given, allowed: {', '.join(MODELS)}"
     raise typer.BadParameter(reason)
+
+
+def prover_name(value: str | None) -> str | None:
+    """Return the name of a proving model or "none", or refuse it."""
+    return value if value == "none" else model_name(value)
 
 
 def _print_version(value: bool) -> None:
@@ -137,6 +143,51 @@ def check(
     found = findings(requirements, space)
     print("\n".join(overview(requirements, space, found)))
     return NOT_MET if any(finding.ruled_out for finding in found) else DONE
+
+
+@app.command("search")
+@step
+def search(
+    spec: Annotated[Path, typer.Argument(metavar="SPEC", help="Requirements file.")],
+    out: Annotated[
+        Path | None,
+        typer.Option(metavar="DIR", help="Folder of results; runs/ and SPEC's name if left out."),
+    ] = None,
+    jobs: Annotated[
+        int | None,
+        typer.Option(metavar="N", min=1, help="Worker processes; all cores if left out."),
+    ] = None,
+    seed: Annotated[
+        int | None, typer.Option(metavar="N", min=0, help="Of the random generator.")
+    ] = None,
+    scout: Annotated[
+        str | None,
+        typer.Option(
+            metavar="MODEL",
+            callback=model_name,
+            help=f"Model that looks at the whole space: {', '.join(MODELS)}.",
+        ),
+    ] = None,
+    prove: Annotated[
+        str | None,
+        typer.Option(
+            metavar="MODEL", callback=prover_name, help="Model with the last word, or none."
+        ),
+    ] = None,
+    resume: Annotated[
+        bool, typer.Option("--resume", help="Go on with the run in the folder.")
+    ] = False,
+    quiet: Annotated[bool, typer.Option("--quiet", help="No progress, no messages.")] = False,
+) -> int:
+    """Find the smallest antennas that meet the requirements."""
+    from optim.run import Options, run  # pymoo is slow to start
+
+    options = Options(
+        out=out, jobs=jobs, seed=seed, scout=scout, prove=prove, resume=resume, quiet=quiet
+    )
+    result = run(spec, options)
+    print(result.text())
+    return DONE if result.met else NOT_MET
 
 
 @app.command("analyse")

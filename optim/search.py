@@ -10,24 +10,28 @@ in the way is taken down in turn, to see what lies behind it.
 from __future__ import annotations
 
 from collections import deque
+from collections.abc import Callable
 from dataclasses import dataclass, replace
 from typing import Final
 
 import numpy as np
 from scipy.stats import qmc
 
+from models import MODELS
 from models.conventions import FloatArray
-from optim.archive import Archive, Judged, diverse, nondominated
+from optim.archive import Archive, IntArray, Judged, diverse, nondominated
 from optim.evaluate import Evaluator
 from optim.journal import Journal
 from optim.margins import Judge
+from optim.precheck import blind_spots
 from optim.problem import View, door, genetic, whole
 from optim.progress import Progress
+from optim.recommend import front_rows, nearest_rows, relaxation_rows, sorted_rows
 from optim.referee import Referee
 from optim.requirements import Goal, Requirements
 from optim.space import DesignSpace
 
-__all__ = ["Found", "Standstill", "evolve", "search", "without_match"]
+__all__ = ["Found", "Standstill", "evolve", "scouted", "search"]
 
 FIRST_SAMPLE: Final = 4
 """Designs in the scout's first generation, as a multiple of the population."""
@@ -42,9 +46,6 @@ PROVE_PATIENCE: Final = 5
 PROVE_GENERATIONS: Final = 30
 LEVELS: Final = (-1.0, -0.5, 0.0, 0.5, 1.0)
 """Violations, in steps of margin, about which designs are handed from scout to prover."""
-
-MOST_ROWS: Final = 200
-"""Designs kept of a front."""
 
 CHECK_ROUNDS: Final = 12
 DOOR_GENERATIONS: Final = 20
@@ -62,8 +63,11 @@ class Found:
     front : Judged
         Designs that hold on the fine grid and that none of their kind beats, worst values over
         the fine grid; empty if nothing meets the requirements.
-    known : Judged
-        Everything the deciding model has judged, on the fine grid where it was.
+    nearest : Judged
+        If nothing does: the designs that miss least, each by other limits.
+    relaxed : Judged
+        And a design for every limit that, relaxed alone, would let it in; if no limit does so
+        alone, the one design that needs the fewest relaxed.
     model : str
         That decided.
     evaluations : dict
@@ -71,7 +75,8 @@ class Found:
     """
 
     front: Judged
-    known: Judged
+    nearest: Judged
+    relaxed: Judged
     model: str
     evaluations: dict[str, int]
 
@@ -82,7 +87,6 @@ def search(
     *,
     scout: Evaluator,
     prove: Evaluator | None,
-    seed: int,
     journal: Journal,
     progress: Progress,
 ) -> Found:
@@ -94,21 +98,19 @@ def search(
     space : DesignSpace
     scout, prove : Evaluator
         The two models; without a second the scout decides.
-    seed : int
-        Of the one random generator.
     journal : Journal
         Gives answers while it has them and takes every new one.
     progress : Progress
         Is told after every generation.
     """
-    rng = np.random.default_rng(seed)
     run, judge = requirements.run, Judge(requirements)
+    rng = np.random.default_rng(run.seed)
     coarse, fine = requirements.band.frequencies(), requirements.band.refined().frequencies()
     decider = prove or scout
     checking = Referee("check", space, judge, decider, fine, journal)
     scouting = deciding = Referee("scout", space, judge, scout, coarse, journal)
     if prove is not None:
-        scout_judge = Judge(without_match(requirements))
+        scout_judge = Judge(scouted(requirements, space, scout.model))
         scouting = Referee("scout", space, scout_judge, scout, coarse, journal)
         deciding = Referee("prove", space, judge, prove, coarse, journal)
     evolve(
@@ -130,17 +132,22 @@ def search(
             rng=rng,
             progress=progress,
         )
-    front = checked_front(deciding.archive, checking)
+    front = settled(deciding, checking, front_rows)
     if not len(front):
         open_doors(scouting, deciding, rng, progress)
-        front = checked_front(deciding.archive, checking)
+        front = settled(deciding, checking, front_rows)
+    nearest = relaxed = front[:0]
+    if not len(front):
+        nearest = settled(deciding, checking, nearest_rows)
+        relaxed = settled(deciding, checking, relaxation_rows)
     stages = {scouting.stage: scouting, deciding.stage: deciding, checking.stage: checking}
     evaluations: dict[str, int] = {}
     for stage in stages.values():
         evaluations[stage.model] = evaluations.get(stage.model, 0) + len(stage.archive)
     return Found(
-        front=front,
-        known=checked(deciding.archive.all, checking.archive),
+        front=front[sorted_rows(front)],
+        nearest=nearest,
+        relaxed=relaxed,
         model=decider.model,
         evaluations=evaluations,
     )
@@ -264,22 +271,20 @@ def about_the_limits(archive: Archive, count: int) -> FloatArray:
     return judged.designs[rows]
 
 
-def checked_front(archive: Archive, checking: Referee) -> Judged:
-    """Return the front of the designs that hold on the fine grid, by their values there.
+def settled(deciding: Referee, checking: Referee, pick: Callable[[Judged], IntArray]) -> Judged:
+    """Return the designs that `pick` takes, all of them judged on the fine grid.
 
-    What fails is taken out and what then comes to the front is checked in turn.
+    What it takes is checked, and it picks again with what the check showed, until nothing is new:
+    a design that fails on the fine grid makes room for the next.
     """
-    rivals = archive.all[archive.all.feasible]
     for _ in range(CHECK_ROUNDS):
-        front = rivals[nondominated(rivals.objectives)]
-        front = front[diverse(front.objectives, MOST_ROWS)]
-        if all(key in checking.archive for key in front.keys):
-            break
-        holds = checking.judge(front.designs).feasible
-        failed = {key for key, good in zip(front.keys, holds, strict=True) if not good}
-        rivals = rivals[[i for i, key in enumerate(rivals.keys) if key not in failed]]
-    front = checking.archive.front
-    return front[diverse(front.objectives, MOST_ROWS)]
+        known = checked(deciding.archive.all, checking.archive)
+        chosen = known[pick(known)]
+        if all(key in checking.archive for key in chosen.keys):
+            return chosen
+        checking.judge(chosen.designs)
+    known = checking.archive.all
+    return known[pick(known)]
 
 
 def checked(judged: Judged, checks: Archive) -> Judged:
@@ -322,19 +327,15 @@ def behind(judged: Judged, view: View, count: int) -> FloatArray:
     return judged.designs[np.lexsort((objectives[:, 0], others))[:count]]
 
 
-def without_match(requirements: Requirements) -> Requirements:
-    """Return the requirements without what only a model with an honest match can judge."""
-    goals = [
-        Goal("gain", "max") if goal.name == "realized_gain" else goal
-        for goal in requirements.goals
-        if goal.name != "vswr"
-    ]
+def scouted(requirements: Requirements, space: DesignSpace, model: str) -> Requirements:
+    """Return the requirements without what the scout's `model` cannot judge."""
+    blind = blind_spots(requirements, space, model)
+    goals = requirements.goals
+    if not MODELS[model].gives_match:
+        gain = (replace(g, name="gain") if g.name == "realized_gain" else g for g in goals)
+        goals = tuple(dict.fromkeys(goal for goal in gain if goal.name != "vswr"))
     return replace(
         requirements,
-        limits=tuple(
-            limit
-            for limit in requirements.limits
-            if limit.figure not in {"vswr", "realized_gain_dbi"}
-        ),
-        goals=tuple(dict.fromkeys(goals)) or (Goal("frontal_area", "min"),),
+        limits=tuple(limit for limit in requirements.limits if limit.label not in blind),
+        goals=goals or (Goal("frontal_area", "min"),),
     )
