@@ -133,9 +133,9 @@ def _require(spec: SpecFile) -> Iterator[Complaint]:
             allowed = f"a number not above require.{key}.max, {beam.max:g}"
             yield f"require.{key}.min", shown(beam.min), allowed
     match, reference = spec.require.vswr, spec.build.reference_ohm
-    wanted = None if match is None else match.reference_ohm
-    if wanted is not None and reference not in (None, wanted):
-        allowed = f"left out, or require.vswr.reference_ohm, {wanted:g}"
+    agreed = None if match is None else match.reference_ohm
+    if agreed is not None and reference is not None and reference != agreed:
+        allowed = f"left out, or require.vswr.reference_ohm, {agreed:g}"
         yield "build.reference_ohm", shown(reference), allowed
 
 

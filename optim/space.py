@@ -200,7 +200,8 @@ def _largest(
         cut("plate_width", _widest(*box, *ranges["apex_angle"]), caps.get("width") or caps["depth"])
     if "frontal_area" in caps:
         cap, area = caps["frontal_area"], value["frontal_area"]
-        cut("plate_width", area / (2.0 * narrow * short), cap)
+        height = max(short, ranges["dipole_length"][0])
+        cut("plate_width", area / (2.0 * narrow * height), cap)
         cut("plate_length", area / (2.0 * narrow * slim), cap)
     if "mass" in caps:
         build = requirements.build
