@@ -73,9 +73,8 @@ class Analysis:
 def analyse(design: Design, model: str) -> Analysis:
     """Return what `model` (a name of `models.MODELS`) says about `design` over its band."""
     frequencies = design.band.frequencies()
-    with np.errstate(invalid="ignore"):  # not a number is an answer here
-        pattern = radiate(design.reflectors, frequencies, model=model, build=design.build)
-        figures = figures_of_merit(pattern, design.terms)
+    pattern = radiate(design.reflectors, frequencies, model=model, build=design.build)
+    figures = figures_of_merit(pattern, design.terms)
     warnings = (*_limits_of(model, design), *_oddities(figures))
     return Analysis(design, model, frequencies, pattern, figures, warnings)
 
