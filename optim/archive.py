@@ -183,7 +183,10 @@ def diverse(objectives: FloatArray, count: int) -> IntArray:
     place = (objectives - low) / np.where(extent > 0.0, extent, 1.0)
     taken = list(dict.fromkeys(place.argmin(axis=0).tolist()))[:count]
     distance = np.min([((place - place[row]) ** 2).sum(axis=1) for row in taken], axis=0)
+    distance[taken] = -1.0
     while len(taken) < count:
-        taken.append(int(distance.argmax()))
-        distance = np.minimum(distance, ((place - place[taken[-1]]) ** 2).sum(axis=1))
+        row = int(distance.argmax())
+        taken.append(row)
+        distance = np.minimum(distance, ((place - place[row]) ** 2).sum(axis=1))
+        distance[row] = -1.0
     return np.array(sorted(taken), dtype=np.intp)

@@ -1,0 +1,51 @@
+"""Small requirements files on the image model, which answers in microseconds, for search tests."""
+
+from pathlib import Path
+
+from optim.requirements import Requirements, read_requirements
+
+EASY = """
+title = "Easy"
+[band]
+low_mhz = 420
+high_mhz = 440
+points = 3
+[require]
+gain_dbi = { min = 11 }
+beamwidth_h_deg = { max = 60 }
+[search]
+apex_angle_deg = [60, 90]
+spacing_mm = [200, 500]
+plate_width_mm = [300, 900]
+dipole_length_mm = [290, 350]
+[build]
+angle_step_deg = 30
+length_step_mm = 5
+[goals]
+minimise = ["frontal_area", "beamwidth_h"]
+maximise = ["gain"]
+[run]
+population = 20
+generations = 8
+scout = "image"
+prove = "none"
+"""
+
+# The beam of a 90° corner narrows as the spacing grows, and its gain falls: no spacing has both.
+IMPOSSIBLE = (
+    EASY.replace("max = 60", "max = 40")
+    .replace("min = 11", "min = 12.2")
+    .replace("apex_angle_deg = [60, 90]", "apex_angle_deg = 90")
+)
+
+
+def write(folder: Path, text: str = EASY) -> Path:
+    """Write a requirements file and return its path."""
+    path = folder / "spec.toml"
+    path.write_text(text, encoding="utf-8")
+    return path
+
+
+def read(folder: Path, text: str = EASY) -> Requirements:
+    """Return a requirements file, understood."""
+    return read_requirements(write(folder, text))
