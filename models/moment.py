@@ -2,8 +2,9 @@
 
 Far fields on both cuts, input impedance (Ω) and efficiency of plates of any size with a thin-wire
 dipole, for any apex angle up to the flat sheet. Each pair of design and frequency is solved on
-coarse grids whose cell counts stand in exact proportion; far field and impedance are extrapolated
-to a vanishing cell. Disagreement of the grids is the model's doubt.
+three coarse grids whose cell counts stand in exact proportion, and far field and impedance are
+extrapolated to a vanishing cell. Where the grids disagree, or the power radiated is not the power
+put in, the pair is solved again on finer grids; what stays in doubt is said in `doubt_db`.
 
 Source: Glisson & Wilton, IEEE Trans. AP-28 (1980), plates; Richmond & Geary, IEEE Trans. AP-23
 (1975), dipole; Richardson 1911, extrapolation.
@@ -12,31 +13,43 @@ Source: Glisson & Wilton, IEEE Trans. AP-28 (1980), plates; Richmond & Geary, IE
 from __future__ import annotations
 
 from dataclasses import dataclass
-from typing import Final
+from typing import Final, Literal
 
 import numpy as np
 
 from models.build import Build
-from models.conventions import ETA0, ComplexArray, FloatArray, wavenumber
+from models.conventions import ETA0, ComplexArray, FloatArray, decibels, wavenumber
 from models.geometry import Reflectors
+from models.moment_field import Sky, plates_far_field
 from models.moment_kernel import near_reach
 from models.moment_plates import Grid, grid_cells
-from models.moment_wire import Wire
+from models.moment_wire import Wire, driven_shapes, sinusoidal_shape
 from models.pattern import CUT_ANGLES, Pattern
 
-__all__ = ["radiate"]
+__all__ = ["Feed", "radiate"]
+
+Feed = Literal["solved", "sinusoidal"]
+"""The dipole's current: solved with the plates, or imposed."""
 
 PROPORTION: Final = (2, 3, 4)
-"""Cell counts of the grids, in multiples of a design's base count."""
+"""Cell counts of the three grids, in multiples of a design's base count."""
 
-DENSITY: Final = 3.0
-"""Base cells a wavelength."""
+DENSITIES: Final = (2.0, 3.0, 4.5)
+"""Base cells a wavelength, at least: the first attempt and the finer ones."""
 
-MODES: Final = 5
+ENOUGH_DB: Final = 0.05
+"""Doubt below which no finer grids are tried."""
+
+VOUCHED_DB: Final = 0.3
+"""Doubt above which, after the finest grids, the model does not vouch for its answer."""
+
+MODES: Final = 6
 """Currents on half the dipole."""
 
-BATCH_NUMBERS: Final = 2_000_000
+BATCH_NUMBERS: Final = 4_000_000
 """Complex numbers in the matrices of one batch: bounds the memory."""
+
+_NUMBERS: Final = ("power", "resistance", "reactance", "efficiency", "doubt_db")
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)
@@ -52,7 +65,7 @@ class Case:
     dipole_radius: FloatArray
 
     @classmethod
-    def of(cls, reflectors: Reflectors, k: FloatArray) -> Case:
+    def pairs(cls, reflectors: Reflectors, k: FloatArray) -> Case:
         """Return all pairs of designs and wavenumbers, designs first."""
         n = k.size
         return cls(
@@ -69,18 +82,41 @@ class Case:
         """Return the pairs at `index`."""
         return Case(**{name: value[index] for name, value in vars(self).items()})
 
+    def counts(self, density: float) -> np.ndarray:
+        """Return what pairs of one batch share, (n, 4) integers.
+
+        Base counts along s and z, the near class, and the highest harmonic of the far field.
+        """
+        waves = self.k / (2.0 * np.pi)
+
+        def cells(size: FloatArray, least: int) -> FloatArray:
+            return np.maximum(np.ceil(density * size * waves - 1e-9), least)
+
+        base_s, base_z = cells(self.plate_width, 2), cells(self.plate_length, 2)
+        dipole = np.hypot(cells(self.spacing, 1), cells(self.dipole_length, 1) / 2.0)
+        reach = np.maximum(np.hypot(base_s, base_z / 2.0), dipole)
+        order = np.ceil(2.0 * np.pi * reach / density)
+        columns = [base_s, base_z, near_reach(self.apex_angle), order]
+        return np.stack(columns, axis=1).astype(int)
+
 
 @dataclass(frozen=True, kw_only=True, eq=False)
 class Response:
-    """The plates' answer to the wire's modes at 1 A: fields (n, n_angle, m), impedance (n, m, m)."""
+    """The plates' answer to each of the wire's shapes at 1 A: fields and impedance, Ω."""
 
-    h_field: ComplexArray
-    e_field: ComplexArray
+    theta: ComplexArray
+    phi: ComplexArray
     impedance: ComplexArray
-    loss: FloatArray
+    square: ComplexArray
 
 
-def radiate(reflectors: Reflectors, frequencies_hz: FloatArray, build: Build) -> Pattern:
+def radiate(
+    reflectors: Reflectors,
+    frequencies_hz: FloatArray,
+    build: Build,
+    *,
+    feed: Feed = "solved",
+) -> Pattern:
     """Return the pattern of every design (n) at every frequency (n_freq).
 
     Parameters
@@ -91,74 +127,89 @@ def radiate(reflectors: Reflectors, frequencies_hz: FloatArray, build: Build) ->
         Hz.
     build : Build
         Its conductivity sets the loss of plates and dipole.
+    feed : {"solved", "sinusoidal"}
+        Whether the dipole's current is solved, or imposed as sin(k(h−|z|)).
     """
     k = wavenumber(frequencies_hz)
-    case = Case.of(reflectors, k)
-    shape, angles = (len(reflectors), k.size), CUT_ANGLES
-    h_field = np.empty((case.k.size, angles.size), dtype=np.complex128)
-    e_field = np.empty_like(h_field)
-    numbers = {
-        name: np.empty(case.k.size)
-        for name in ("power", "resistance", "reactance", "efficiency", "doubt_db")
-    }
-    keys, group = np.unique(_grid_key(case), axis=0, return_inverse=True)
-    for index, (base_s, base_z, reach) in enumerate(keys):
-        members = np.flatnonzero(group.reshape(-1) == index)
-        unknowns = base_s * base_z * max(PROPORTION) ** 2
-        size = max(1, BATCH_NUMBERS // int(unknowns) ** 2)
-        for start in range(0, members.size, size):
-            rows = members[start : start + size]
-            part = _solve(case.rows(rows), (int(base_s), int(base_z)), int(reach), build)
-            h_field[rows], e_field[rows] = part.h_field, part.e_field
-            for name, value in numbers.items():
-                value[rows] = getattr(part, name)
+    case = Case.pairs(reflectors, k)
+    shape = (len(reflectors), k.size)
+    pattern = Pattern(
+        angles=CUT_ANGLES,
+        h_field=np.empty((case.k.size, CUT_ANGLES.size), dtype=np.complex128),
+        e_field=np.empty((case.k.size, CUT_ANGLES.size), dtype=np.complex128),
+        **{name: np.full(case.k.size, np.inf) for name in _NUMBERS},
+    )
+    names = ("h_field", "e_field", *_NUMBERS)
+    open_rows = np.arange(case.k.size)
+    for density in DENSITIES:
+        counts = case.rows(open_rows).counts(density)
+        keys, group = np.unique(counts, axis=0, return_inverse=True)
+        for index, key in enumerate(keys):
+            members = open_rows[group.reshape(-1) == index]
+            unknowns = int(key[0] * key[1]) * PROPORTION[-1] ** 2
+            size = max(1, BATCH_NUMBERS // unknowns**2)
+            for start in range(0, members.size, size):
+                rows = members[start : start + size]
+                part = _solve(case.rows(rows), key.tolist(), build, feed)
+                for name in names:
+                    getattr(pattern, name)[rows] = getattr(part, name)
+        open_rows = open_rows[pattern.doubt_db[open_rows] > ENOUGH_DB]
+    pattern.doubt_db[~(pattern.doubt_db <= VOUCHED_DB)] = np.inf
     return Pattern(
-        angles=angles,
-        h_field=h_field.reshape(*shape, -1),
-        e_field=e_field.reshape(*shape, -1),
-        **{name: value.reshape(shape) for name, value in numbers.items()},
+        angles=CUT_ANGLES,
+        **{name: (v := getattr(pattern, name)).reshape(*shape, *v.shape[1:]) for name in names},
     )
 
 
-def _grid_key(case: Case) -> np.ndarray:
-    """Return base counts along s and z and the near class, (n, 3) integers."""
-    waves = case.k / (2.0 * np.pi)
-    base_s = np.maximum(np.ceil(DENSITY * case.plate_width * waves - 1e-9), 1)
-    base_z = np.maximum(np.ceil(DENSITY * case.plate_length * waves - 1e-9), 2)
-    return np.stack([base_s, base_z, near_reach(case.apex_angle)], axis=1).astype(int)
-
-
-def _solve(case: Case, base: tuple[int, int], reach: int, build: Build) -> Pattern:
+def _solve(case: Case, key: list[int], build: Build, feed: Feed) -> Pattern:
     """Return the pattern of pairs on grids of equal counts, without the frequency axis."""
+    base_s, base_z, reach, order = key
+    sky = Sky.of(order)
     wire = Wire(modes=MODES, k=case.k, length=case.dipole_length, radius=case.dipole_radius)
-    responses = [_respond(case, wire, (f * base[0], f * base[1]), reach) for f in PROPORTION]
-    whole = _extrapolate(responses, _weights(PROPORTION, (0, 1, 2)))
-    check = _extrapolate(responses[1:], _weights(PROPORTION[1:], (0, 2)))
-    angles = CUT_ANGLES
-    currents, resistance, reactance = _drive(wire, whole.impedance)
-    h_field, e_field = _total(case, wire, whole, currents, angles)
-    power = np.pi / ETA0 * resistance
-    currents_2, resistance_2, _ = _drive(wire, check.impedance)
-    boresight_2 = _total(case, wire, check, currents_2, angles)[0][:, 0]
-    with np.errstate(divide="ignore", invalid="ignore"):
-        change = np.abs(boresight_2) ** 2 / np.abs(h_field[:, 0]) ** 2 * resistance / resistance_2
-        doubt = np.abs(10.0 * np.log10(change))
-    skin = np.sqrt(case.k * ETA0 / (2.0 * build.conductivity))  # √(ωμ/2σ)
-    wire_loss = wire.current_square() / (2.0 * np.pi * case.dipole_radius[:, None, None])
-    loss = np.einsum("bm,bmn,bn->b", currents.conj(), whole.loss + wire_loss, currents).real * skin
+    modes = wire.impedance()
+    shapes = driven_shapes(wire, modes) if feed == "solved" else sinusoidal_shape(wire)
+    alone = _alone(case, wire, shapes, modes, sky)
+    grids = [_respond(case, wire, shapes, sky, (f * base_s, f * base_z), reach) for f in PROPORTION]
+    answer = _drive(shapes, alone, _limit(grids, (0, 2, 4)))
+    rough = _drive(shapes, alone, _limit(grids[1:], (0, 2)))
+    resistance = answer.impedance.real
+    # √(ωμ/2σ) times the currents' squares: the loss is small enough not to change the currents.
+    skin = np.sqrt(case.k * ETA0 / (2.0 * build.conductivity))
+    loss = skin * answer.square
+    h_field, e_field = sky.cuts(answer.theta)
     return Pattern(
-        angles=angles,
+        angles=CUT_ANGLES,
         h_field=h_field,
         e_field=e_field,
-        power=power,
+        power=np.pi / ETA0 * resistance,
         resistance=resistance + loss,
-        reactance=reactance,
+        reactance=answer.impedance.imag,
         efficiency=resistance / (resistance + loss),
-        doubt_db=doubt,
+        doubt_db=_doubt(sky, answer, rough),
     )
 
 
-def _respond(case: Case, wire: Wire, counts: tuple[int, int], reach: int) -> Response:
+def _alone(case: Case, wire: Wire, shapes: ComplexArray, modes: ComplexArray, sky: Sky) -> Response:
+    """Return fields, impedance and squared current of the dipole in free space."""
+    theta, phi = sky.theta, sky.phi
+    path = (case.k * case.spacing)[:, None] * (np.sin(theta) * np.cos(phi))
+    rod = shapes.conj().swapaxes(1, 2) @ wire.current_square() @ shapes
+    return Response(
+        theta=wire.far_field(shapes, np.cos(theta)) * np.exp(1j * path)[..., None],
+        phi=np.zeros(1, dtype=np.complex128),
+        impedance=np.asarray(shapes.swapaxes(1, 2) @ modes @ shapes, dtype=np.complex128),
+        square=rod / (2.0 * np.pi * case.dipole_radius[:, None, None]),
+    )
+
+
+def _respond(
+    case: Case,
+    wire: Wire,
+    shapes: ComplexArray,
+    sky: Sky,
+    counts: tuple[int, int],
+    reach: int,
+) -> Response:
     """Return what the plates do on a grid of `counts` cells."""
     cells = grid_cells(
         *counts,
@@ -168,55 +219,74 @@ def _respond(case: Case, wire: Wire, counts: tuple[int, int], reach: int) -> Res
         plate_length=case.plate_length,
     )
     grid = Grid(cells=cells)
-    voltages = grid.voltages(wire, case.spacing)
-    currents: ComplexArray = np.linalg.solve(grid.matrix(reach), voltages)
-    h_field, e_field = grid.cuts(currents, CUT_ANGLES)
+    voltages = grid.voltages(wire, shapes, case.spacing)
+    scale = (4.0 * np.pi / ETA0 * case.k / 1j)[:, None, None]
+    currents = np.linalg.solve(grid.matrix(reach), scale * voltages).astype(
+        np.complex128, copy=False
+    )
+    theta, phi = plates_far_field(grid, currents, sky)
     return Response(
-        h_field=h_field,
-        e_field=e_field,
-        # The voltages hold a quarter of the antenna; the dipole feels the field against its own.
-        impedance=-4.0 * voltages.swapaxes(1, 2) @ currents,
-        loss=grid.current_square(currents),
+        theta=theta,
+        phi=phi,
+        # The unknowns are a quarter of the antenna; the dipole feels the field against its own.
+        impedance=-4.0 * (voltages.swapaxes(1, 2) @ currents),
+        square=grid.current_square(currents),
     )
 
 
-def _weights(counts: tuple[int, ...], powers: tuple[float, ...]) -> FloatArray:
-    """Return what each grid weighs in the limit of a series in these powers of the cell."""
-    cell = 1.0 / np.asarray(counts, dtype=np.float64)
-    rows = cell[None, :] ** np.asarray(powers, dtype=np.float64)[:, None]
-    return np.asarray(np.linalg.solve(rows, np.eye(cell.size)[:, 0]))
+def _limit(grids: list[Response], powers: tuple[int, ...]) -> Response:
+    """Return fields and impedance for a vanishing cell, from a series in these powers of it.
 
-
-def _extrapolate(responses: list[Response], weights: FloatArray) -> Response:
-    """Return the weighted sum of fields and impedance; the loss of the finest grid."""
+    The loss stays that of the finest grid.
+    """
+    cell = 1.0 / np.array(PROPORTION[-len(grids) :], dtype=np.float64)
+    rows = cell ** np.array(powers, dtype=np.float64)[:, None]
+    weights = np.linalg.solve(rows, np.eye(cell.size)[0])
 
     def limit(name: str) -> ComplexArray:
-        parts = (w * getattr(r, name) for w, r in zip(weights, responses, strict=True))
-        return np.asarray(sum(parts))
+        parts = [w * getattr(grid, name) for w, grid in zip(weights, grids, strict=True)]
+        return np.asarray(sum(parts[1:], start=parts[0]))
 
     return Response(
-        h_field=limit("h_field"),
-        e_field=limit("e_field"),
+        theta=limit("theta"),
+        phi=limit("phi"),
         impedance=limit("impedance"),
-        loss=responses[-1].loss,
+        square=grids[-1].square,
     )
 
 
-def _drive(wire: Wire, coupled: ComplexArray) -> tuple[ComplexArray, FloatArray, FloatArray]:
-    """Return mode currents for 1 A at the gap, and the input impedance there, Ω."""
-    gap = np.zeros((wire.k.size, wire.modes, 1))
-    gap[:, 0] = 1.0
-    currents: ComplexArray = np.linalg.solve(wire.impedance() + coupled, gap)[..., 0]
-    impedance: ComplexArray = 1.0 / currents[:, 0]
-    return np.asarray(currents * impedance[:, None]), impedance.real, impedance.imag
+@dataclass(frozen=True, kw_only=True, eq=False)
+class Answer:
+    """Dipole and plates together, for 1 A at the gap: fields, impedance, Ω, squared current, A²."""
+
+    theta: ComplexArray
+    phi: ComplexArray
+    impedance: ComplexArray
+    square: FloatArray
 
 
-def _total(
-    case: Case, wire: Wire, response: Response, currents: ComplexArray, angles: FloatArray
-) -> tuple[ComplexArray, ComplexArray]:
-    """Return f of plates and dipole together on both cuts, (n, n_angle) each."""
-    ahead = np.exp(1j * (case.k * case.spacing)[:, None] * np.cos(angles))[..., None]
-    h_field = response.h_field + wire.far_field(np.zeros(1)) * ahead
-    e_field = response.e_field + wire.far_field(np.sin(angles)) * ahead
-    weights = currents[..., None]
-    return (h_field @ weights)[..., 0], (e_field @ weights)[..., 0]
+def _drive(shapes: ComplexArray, alone: Response, plates: Response) -> Answer:
+    """Return dipole and plates with the wire's shapes in the shares that 1 A at the gap asks."""
+    gap = shapes[:, 0]
+    total = alone.impedance + plates.impedance
+    shares = np.linalg.solve(total, gap[..., None])
+    impedance = 1.0 / (gap[:, None] @ shares)
+    shares = shares * impedance
+    square = shares.conj().swapaxes(1, 2) @ (alone.square + plates.square) @ shares
+    return Answer(
+        theta=np.matmul(alone.theta + plates.theta, shares)[..., 0],
+        phi=np.matmul(plates.phi, shares)[..., 0],
+        impedance=np.asarray(impedance[:, 0, 0], dtype=np.complex128),
+        square=square[:, 0, 0].real,
+    )
+
+
+def _doubt(sky: Sky, answer: Answer, rough: Answer) -> FloatArray:
+    """Return how far grids, and radiated and accepted power, disagree, dB."""
+    with np.errstate(divide="ignore", invalid="ignore"):
+        level = [sky.boresight(a.theta) / np.sqrt(a.impedance.real) for a in (answer, rough)]
+        grids = decibels((1.0 + np.abs(level[0] - level[1]) / np.abs(level[0])) ** 2)
+        accepted = np.pi / ETA0 * answer.impedance.real
+        balance = np.abs(decibels(sky.mean_square(answer.theta, answer.phi) / accepted))
+    # Where a resistance is not positive the levels are NaN, and there is nothing to vouch for.
+    return np.nan_to_num(np.maximum(grids, balance), nan=np.inf, posinf=np.inf)

@@ -11,6 +11,7 @@ Source: Glisson & Wilton, IEEE Trans. AP-28 (1980); the rectangle's potential is
 from __future__ import annotations
 
 from dataclasses import dataclass
+from functools import lru_cache
 from typing import Final
 
 import numpy as np
@@ -65,99 +66,125 @@ def near_reach(apex_angle: FloatArray) -> FloatArray:
 
 def own_plate(cells: Cells) -> ComplexArray:
     """Return the kernel of a plate on itself over |Δs|, |Δz| in cells, (n, count_s, count_z)."""
-    ds = np.arange(cells.count_s) * cells.size_s[:, None]
-    dz = np.arange(cells.count_z) * cells.size_z[:, None]
-    u, v = ds[:, :, None], dz[:, None, :]
-    return _static(cells, u, v, None) + _remainder(cells, u, v, 0.0)
+    apart = np.arange(cells.count_s) * cells.size_s[:, None]
+    return _near(cells, apart, np.zeros_like(apart), cells.count_z)
 
 
-def between_plates(cells: Cells, s: FloatArray, reach: int) -> ComplexArray:
-    """Return the kernel from plate to plate, made symmetric, (n, n_s, n_s, count_z).
+def between_plates(cells: Cells, reach: int) -> tuple[ComplexArray, ComplexArray]:
+    """Return the kernel from plate to plate at cell centres and at the edges between, symmetric.
 
     Parameters
     ----------
     cells : Cells
         The batch.
-    s : (n, n_s)
-        Positions (cell centres or edges) on both plates, m.
     reach : int
         Of `near_reach`, one for the batch.
+
+    Returns
+    -------
+    (n, count_s, count_s, count_z) and (n, count_s - 1, count_s - 1, count_z)
     """
-    count = s.shape[1]
-    one, two = np.triu_indices(count)
-    full = np.zeros((count, count), dtype=np.intp)
-    full[one, two] = full[two, one] = np.arange(one.size)
-    dz = np.arange(cells.count_z) * cells.size_z[:, None]
-    table = _far(cells, s[:, one], s[:, two], dz)
-    close = np.flatnonzero(one + two < reach)
+    one, two, close, at_centres, at_edges = _pair_places(cells.count_s, reach)
+    s = np.concatenate([cells.centres(), cells.edges()], axis=1)
+    table = _far(cells, s[:, one], s[:, two])
     rows = min(_NEAR_ROWS, cells.count_z)
-    cosine, sine = (f(cells.apex_angle)[:, None, None] for f in (np.cos, np.sin))
-    near: ComplexArray | float = 0.0
-    for here, there in ((one, two), (two, one)):
-        a, b = s[:, here[close], None], s[:, there[close], None]
-        u, v, height = a * cosine - b, dz[:, None, :rows], np.abs(a * sine)
-        near = near + 0.5 * (_static(cells, u, v, height) + _remainder(cells, u, v, height))
-    table[:, close, :rows] = near
-    return table[:, full]
+    here = s[:, np.concatenate([one[close], two[close]])]
+    there = s[:, np.concatenate([two[close], one[close]])]
+    cosine, sine = (f(cells.apex_angle)[:, None] for f in (np.cos, np.sin))
+    near = _near(cells, here * cosine - there, np.abs(here * sine), rows)
+    table[:, close, :rows] = 0.5 * (near[:, : close.size] + near[:, close.size :])
+    return table[:, at_centres], table[:, at_edges]
 
 
-def _far(cells: Cells, s: FloatArray, t: FloatArray, dz: FloatArray) -> ComplexArray:
+@lru_cache(maxsize=64)
+def _pair_places(count: int, reach: int) -> tuple[np.ndarray, ...]:
+    """Return pairs of places (centres, then edges), the near ones, and each pair's number."""
+    one, two = np.triu_indices(count)
+    first, second = np.triu_indices(count - 1)
+    close = np.concatenate([one + two < reach, first + second + 1 < reach])
+    number = np.arange(close.size)
+    at_centres = np.zeros((count, count), dtype=np.intp)
+    at_edges = np.zeros((count - 1, count - 1), dtype=np.intp)
+    at_centres[one, two] = at_centres[two, one] = number[: one.size]
+    at_edges[first, second] = at_edges[second, first] = number[one.size :]
+    one, two = np.concatenate([one, first + count]), np.concatenate([two, second + count])
+    return one, two, np.flatnonzero(close), at_centres, at_edges
+
+
+def _far(cells: Cells, s: FloatArray, t: FloatArray) -> ComplexArray:
     """Return the kernel of far cells: centre plus second derivatives, (n, n_pairs, count_z)."""
     k, cosine = cells.k[:, None, None], np.cos(cells.apex_angle)[:, None]
     s2, z2 = cells.size_s[:, None] ** 2, cells.size_z[:, None] ** 2
+    dz2 = z2 * np.arange(cells.count_z) ** 2
     across = 0.5 * s2 * ((s - t * cosine) ** 2 + (t - s * cosine) ** 2)
-    square = (s**2 + t**2 - 2.0 * s * t * cosine)[:, :, None] + (dz**2)[:, None, :]
-    inverse_square = 1.0 / np.maximum(square, 1e-3 * s2[..., None])
+    square = (s**2 + t**2 - 2.0 * s * t * cosine)[:, :, None] + dz2[:, None, :]
+    # Coinciding cells are near ones and get their value there.
+    np.maximum(square, 1e-3 * s2[..., None], out=square)
+    inverse_square = 1.0 / square
     inverse = np.sqrt(inverse_square)
-    phase = k * (square * inverse)
-    along = (across[:, :, None] + (z2 * dz**2)[:, None, :]) * inverse_square
+    phase = k * np.sqrt(square)
+    # The mean over a cell adds (c_s² ∂²/∂s² + c_z² ∂²/∂z²)/24; s is the mean of both plates.
+    along = across[:, :, None] + (z2 * dz2)[:, None, :]
+    along *= inverse_square
     bend = (3.0 * along - (s2 + z2)[..., None]) * inverse_square / 24.0
-    factor = np.empty(phase.shape, dtype=np.complex128)
-    real = inverse * (1.0 + bend - k**2 / 24.0 * along)
-    imaginary = inverse * phase * bend
-    sine, cosine = np.sin(phase), np.cos(phase)
-    factor.real = real * cosine + imaginary * sine
-    factor.imag = imaginary * cosine - real * sine
-    return factor
+    along *= k**2 / -24.0
+    along += bend
+    along += 1.0
+    bend *= phase
+    sin, cos = np.sin(phase), np.cos(phase)
+    kernel = np.empty(phase.shape, dtype=np.complex128)
+    np.multiply(inverse, along * cos + bend * sin, out=kernel.real)
+    np.multiply(inverse, bend * cos - along * sin, out=kernel.imag)
+    return kernel
 
 
-def _static(cells: Cells, u: FloatArray, v: FloatArray, height: FloatArray | None) -> FloatArray:
-    """Return the mean of 1/R over the cell at (u, v), seen from `height` above the origin."""
-    half_s, half_z = cells.size_s[:, None, None] / 2.0, cells.size_z[:, None, None] / 2.0
-    total: FloatArray | float = 0.0
-    for sign_u in (1.0, -1.0):
-        for sign_v in (1.0, -1.0):
-            x, y = u + sign_u * half_s, v + sign_v * half_z
-            total = total + sign_u * sign_v * _corner(x, y, height)
-    return np.asarray(total / (4.0 * half_s * half_z))
+def _near(cells: Cells, u: FloatArray, height: FloatArray, rows: int) -> ComplexArray:
+    """Return the mean of e^{-jkR}/R over cells (u, 0 … rows − 1), seen from above the origin.
+
+    Parameters
+    ----------
+    cells : Cells
+        The batch.
+    u, height : (n, n_places)
+        Centre of the cell along s and height above its plane, m.
+    rows : int
+        Cells along z.
+    """
+    size_s, size_z = cells.size_s[:, None, None], cells.size_z[:, None]
+    squared = (height**2)[:, :, None, None]
+    v = np.arange(rows) * size_z
+    # Static part: neighbours share the corners in z.
+    x = u[:, :, None] + size_s * np.array([-0.5, 0.5])
+    y = (np.arange(rows + 1) - 0.5) * size_z
+    corners = _corner(x[..., None], y[:, None, None, :], squared)
+    edges = corners[:, :, 1] - corners[:, :, 0]
+    mean = (edges[..., 1:] - edges[..., :-1]) / (size_s * size_z[..., None])
+    # The rest, (e^{-jkR} − 1)/R, at 2 × 2 Gauss points.
+    x = u[:, :, None] + size_s * np.array([-_GAUSS, _GAUSS])
+    y = (v[:, :, None] + size_z[..., None] * np.array([-_GAUSS, _GAUSS])).reshape(u.shape[0], -1)
+    radius = np.sqrt((x**2)[..., None] + (y**2)[:, None, None, :] + squared)
+    half_phase = 0.5 * cells.k[:, None, None, None] * radius
+    sin = np.sin(half_phase)
+    radius *= 2.0
+    kernel = np.empty(mean.shape, dtype=np.complex128)
+    # cos x − 1 loses digits for small x; −2 sin²(x/2) does not.
+    kernel.real = mean - _four(sin**2 / radius)
+    kernel.imag = -_four(sin * np.cos(half_phase) / radius)
+    return kernel
 
 
-def _corner(x: FloatArray, y: FloatArray, height: FloatArray | None) -> FloatArray:
+def _four(values: FloatArray) -> FloatArray:
+    """Return the sums over 2 × 2 points, (n, n_places, 2, 2 rows) to (n, n_places, rows)."""
+    both = values[:, :, 0] + values[:, :, 1]
+    return np.asarray(both[..., 0::2] + both[..., 1::2])
+
+
+def _corner(x: FloatArray, y: FloatArray, squared: FloatArray) -> FloatArray:
     """Return ∫∫ dx dy / √(x² + y² + h²) from 0; the corners of a rectangle give its integral."""
-    if height is None:
-        # Corners never lie on an axis: cells are seen from cell centres.
-        return np.asarray(x * np.arcsinh(y / np.abs(x)) + y * np.arcsinh(x / np.abs(y)))
-    h2 = np.maximum(height**2, 1e-20 * (x**2 + y**2))
+    x2, y2 = x**2, y**2
+    h2 = np.maximum(squared, 1e-20 * (x2 + y2))
     h = np.sqrt(h2)
-    radius = np.sqrt(x**2 + y**2 + h2)
-    return np.asarray(
-        x * np.arcsinh(y / np.sqrt(x**2 + h2))
-        + y * np.arcsinh(x / np.sqrt(y**2 + h2))
-        - h * np.arctan2(x * y, h * radius)
-    )
-
-
-def _remainder(
-    cells: Cells, u: FloatArray, v: FloatArray, height: FloatArray | float
-) -> ComplexArray:
-    """Return the mean of (e^{-jkR} − 1)/R over the cell at (u, v) by 2 × 2 Gauss points."""
-    k = cells.k[:, None, None]
-    step_s, step_z = _GAUSS * cells.size_s[:, None, None], _GAUSS * cells.size_z[:, None, None]
-    total = np.zeros(np.broadcast_shapes(u.shape, v.shape), dtype=np.complex128)
-    for point_u in (u - step_s, u + step_s):
-        for point_v in (v - step_z, v + step_z):
-            radius = np.sqrt(point_u**2 + point_v**2 + np.square(height))
-            # cos x − 1 loses digits for small x; −2 sin²(x/2) does not.
-            total.real -= 2.0 * np.sin(0.5 * k * radius) ** 2 / radius
-            total.imag -= np.sin(k * radius) / radius
-    return total / 4.0
+    total = x * np.arcsinh(y / np.sqrt(x2 + h2))
+    total += y * np.arcsinh(x / np.sqrt(y2 + h2))
+    total -= h * np.arctan2(x * y, h * np.sqrt(x2 + y2 + h2))
+    return np.asarray(total)

@@ -18,11 +18,12 @@ Source: Glisson & Wilton, IEEE Trans. AP-28 (1980).
 from __future__ import annotations
 
 from dataclasses import dataclass
+from functools import lru_cache
 from typing import Final
 
 import numpy as np
 
-from models.conventions import ETA0, ComplexArray, FloatArray
+from models.conventions import ComplexArray, FloatArray
 from models.moment_kernel import Cells, between_plates, own_plate
 from models.moment_wire import Wire
 
@@ -80,130 +81,127 @@ class Grid:
         return size * (rows + 0.5 * odd), size * (rows + 0.5 + 0.5 * odd)
 
     def matrix(self, reach: int) -> ComplexArray:
-        """Return the matrix of the integral equation, Ω, (n, N, N)."""
-        cells, odd = self.cells, self.cells.count_z % 2
-        n_s, rows = cells.count_s, cells.count_z // 2
-        i = np.arange(n_s)
-        own = own_plate(cells)
-        table = own[:, np.abs(i[:, None] - i)]
-        at_edges = table[:, 1:, 1:] + np.cos(cells.apex_angle)[
-            :, None, None, None
-        ] * between_plates(cells, cells.edges(), reach - 1)
-        table = table + between_plates(cells, cells.centres(), reach)
-        k2 = (cells.k**2)[:, None, None, None]
-        # Differences along z: of edge and edge (even), of edge and cell (odd); along s likewise.
-        inner = np.concatenate([table[..., 1:2], table[..., :-2]], axis=-1)
-        zz = (k2 * cells.size_z[:, None, None, None] ** 2 - 2.0) * table
-        zz = zz[..., :-1] + table[..., 1:] + inner
-        across = table[:, :, :-1] - table[:, :, 1:]
-        zs = across[..., 1:] - across[..., :-1]
-        ss = k2 * cells.size_s[:, None, None, None] ** 2 * at_edges
-        ss = ss - (across[:, :-1] - across[:, 1:])
-        r = np.arange(rows)
-        apart, sum_ = np.abs(r[:, None] - r), r[:, None] + r
-        zz_block = zz[..., apart] + zz[..., sum_ + odd]
-        ss_block = ss[..., apart] - ss[..., sum_ + 1 + odd]
-        # Edge n lies at n + odd/2, cell j at j + 1/2 + odd/2; zs is over the half steps between.
-        gap = r[:, None] - r - 0.5
-        sign = np.where(gap > 0.0, 1.0, -1.0)
-        zs_block = sign * zs[..., (np.abs(gap) - 0.5).astype(int)] - zs[..., sum_ + odd]
-        first, second = n_s * rows, (n_s - 1) * rows
-        matrix = np.empty((cells.k.size, first + second, first + second), dtype=np.complex128)
-        matrix[:, :first, :first] = zz_block.swapaxes(2, 3).reshape(-1, first, first)
-        matrix[:, first:, first:] = ss_block.swapaxes(2, 3).reshape(-1, second, second)
-        cross = zs_block.swapaxes(2, 3).reshape(-1, first, second)
-        matrix[:, :first, first:] = cross
-        matrix[:, first:, :first] = cross.swapaxes(1, 2)
-        matrix *= (1j * ETA0 / (4.0 * np.pi) / cells.k)[:, None, None]
-        return matrix
-
-    def voltages(self, wire: Wire, spacing: FloatArray) -> ComplexArray:
-        """Return ∫E dl of the wire's modes (1 A) over the test lines, V, (n, N, modes)."""
-        cells = self.cells
-        edges, middles = self.heights()
-        cosine = np.cos(cells.apex_angle / 2.0)[:, None]
-        sine = np.sin(cells.apex_angle / 2.0)[:, None]
-
-        def place(s: FloatArray) -> tuple[FloatArray, FloatArray]:
-            along = s - spacing[:, None] * cosine
-            return np.sqrt(along**2 + (spacing[:, None] * sine) ** 2), along
-
-        distance, _ = place(cells.centres())
-        along_z = wire.near_field(distance, edges)[0] * cells.size_z[:, None, None, None]
-        distance, along = place(cells.edges())
-        along_s = wire.near_field(distance, middles)[1] * (
-            (along / distance)[:, :, None, None] * cells.size_s[:, None, None, None]
-        )
-        size, modes = cells.k.size, wire.modes
-        return np.concatenate(
-            [along_z.reshape(size, -1, modes), along_s.reshape(size, -1, modes)], axis=1
-        )
-
-    def split(self, currents: ComplexArray) -> tuple[ComplexArray, ComplexArray]:
-        """Return J_z (n, count_s, rows, m) and J_s (n, count_s - 1, rows, m) unknowns apart."""
-        n_s, rows = self.cells.count_s, self.cells.count_z // 2
-        size, m = currents.shape[0], currents.shape[-1]
-        first = n_s * rows
-        return (
-            currents[:, :first].reshape(size, n_s, rows, m),
-            currents[:, first:].reshape(size, n_s - 1, rows, m),
-        )
-
-    def cuts(self, currents: ComplexArray, angles: FloatArray) -> tuple[ComplexArray, ComplexArray]:
-        """Return f of the plates on the H- and the E-plane cut, (n, n_angle, m) each.
+        """Return the matrix over jη/(4πk), (n, N, N), without unit.
 
         Parameters
         ----------
-        currents : (n, N, m)
-            Unknowns, A.
-        angles : (n_angle,)
-            Off boresight, radians.
+        reach : int
+            Of `near_reach`, one for the batch.
         """
         cells = self.cells
-        k = cells.k[:, None, None]
-        half_angle = cells.apex_angle[:, None, None] / 2.0
-        j_z, j_s = self.split(currents)
-        moment_z = (cells.size_z * cells.k)[:, None, None] * j_z.sum(axis=2)
-        ks = k * cells.centres()[:, None, :]
-        turn = angles[:, None]
-        lit = _turn(ks * np.cos(turn - half_angle)) + _turn(ks * np.cos(turn + half_angle))
-        h_cut = lit @ moment_z
-        # E-plane: both plates alike, e^{jk s cosψ cos(α/2)}; z enters as cos and j sin.
-        sine, cosine = np.abs(np.cos(angles)), np.sin(angles)
-        toward = np.where(angles <= np.pi / 2.0, 1.0, -1.0)
-        edges, middles = self.heights()
-        even = np.cos(k * edges[:, None, :] * cosine[:, None])
-        odd = np.sin(k * middles[:, None, :] * cosine[:, None])
-        tilt = np.cos(angles)[:, None] * np.cos(half_angle)
-        along_z = _turn(ks * tilt)
-        along_s = _turn(k * cells.edges()[:, None, :] * tilt)
-        e_z = np.einsum("bai,bar,birm->bam", along_z, even, j_z, optimize=True)
-        e_s = np.einsum("bae,bar,berm->bam", along_s, odd, j_s, optimize=True)
-        size_z, size_s = (
-            (cells.size_z * cells.k)[:, None, None],
-            (cells.size_s * cells.k)[:, None, None],
-        )
-        e_cut = 2.0 * size_z * sine[:, None] * e_z
-        e_cut -= 2j * size_s * (toward * cosine)[:, None] * np.cos(half_angle) * e_s
-        return h_cut, e_cut
+        shift = np.arange(cells.count_s)
+        own = own_plate(cells)[:, np.abs(shift[:, None] - shift)]
+        table, at_edges = between_plates(cells, reach)
+        # J_s on the other plate points along its slope, cos α of it this way.
+        turn = np.cos(cells.apex_angle)[:, None, None, None]
+        turned = turn * table
+        turned += own
+        table += own
+        # Tables over the distance in z: J_z on J_z, J_z on J_s, J_s on J_s. The vector potential is
+        # that of a rooftop, a mean of neighbouring cells' kernels, along the whole test line.
+        k2_z, k2_s = ((cells.k * size) ** 2 for size in (cells.size_z, cells.size_s))
+        zz = -2.0 * table[..., :-1]
+        zz += table[..., 1:]
+        zz[..., 1:] += table[..., :-2]
+        zz[..., 0] += table[..., 1]
+        zz *= (1.0 + k2_z / 12.0)[:, None, None, None]
+        zz += k2_z[:, None, None, None] * table[..., :-1]
+        across = table[:, :, :-1] - table[:, :, 1:]
+        zs = across[..., 1:] - across[..., :-1]
+        turned = turned[:, 1:] + turned[:, :-1]
+        ss = turned[:, :, 1:] + turned[:, :, :-1]
+        ss *= (k2_s / 12.0)[:, None, None, None]
+        at_edges *= turn
+        at_edges += own[:, 1:, 1:]
+        at_edges *= (k2_s / 1.5)[:, None, None, None]
+        ss += at_edges
+        ss += across[:, 1:]
+        ss -= across[:, :-1]
+        return _fold(cells.count_s, cells.count_z, zz, zs, ss)
 
-    def current_square(self, currents: ComplexArray) -> FloatArray:
-        """Return ∫ J_m* · J_n dS over both plates, 1/m² · m² per A², (n, m, m), real part."""
+    def voltages(self, wire: Wire, shapes: ComplexArray, spacing: FloatArray) -> ComplexArray:
+        """Return ∫E dl of the wire's shapes over the test lines, V, (n, N, n_shape)."""
         cells = self.cells
-        j_z, j_s = self.split(currents)
-        weight = np.full(j_z.shape[2], 4.0)
+        edges, middles = self.heights()
+        cosine, sine = (f(cells.apex_angle / 2.0)[:, None] for f in (np.cos, np.sin))
+        across = (spacing[:, None] * sine) ** 2
+        along = cells.centres() - spacing[:, None] * cosine
+        e_z = wire.near_field(shapes, np.sqrt(along**2 + across), edges, radial=False)
+        along = cells.edges() - spacing[:, None] * cosine
+        distance = np.sqrt(along**2 + across)
+        e_s = wire.near_field(shapes, distance, middles, radial=True)
+        e_s *= (along / distance * cells.size_s[:, None])[:, :, None, None]
+        size, count = shapes.shape[0], shapes.shape[2]
+        return np.concatenate(
+            [
+                e_z.reshape(size, -1, count) * cells.size_z[:, None, None],
+                e_s.reshape(size, -1, count),
+            ],
+            axis=1,
+        )
+
+    def split(self, unknowns: ComplexArray) -> tuple[ComplexArray, ComplexArray]:
+        """Return J_z (n, count_s, rows, m) and J_s (n, count_s - 1, rows, m) unknowns apart."""
+        n_s, rows = self.cells.count_s, self.cells.count_z // 2
+        size, _, m = unknowns.shape
+        first = n_s * rows
+        return (
+            unknowns[:, :first].reshape(size, n_s, rows, m),
+            unknowns[:, first:].reshape(size, n_s - 1, rows, m),
+        )
+
+    def current_square(self, unknowns: ComplexArray) -> ComplexArray:
+        """Return ∫ J_m*·J_n dS over both plates for currents (n, N, m) in A, A², (n, m, m)."""
+        cells = self.cells
+        weight = np.full(cells.count_z // 2, 4.0)
         if cells.count_z % 2 == 0:
-            weight[0] = 8.0  # half an unknown on half a cell's area
-        ratio = (cells.size_z / cells.size_s)[:, None, None, None]
-        size, m = currents.shape[0], currents.shape[-1]
-        left = (j_z * (ratio * weight[:, None])).reshape(size, -1, m)
-        right = (j_s * (4.0 / ratio)).reshape(size, -1, m)
-        stack = np.concatenate([left, right], axis=1)
-        return np.asarray((currents.conj().swapaxes(1, 2) @ stack).real)
+            weight[0] = 8.0  # half the current on half a cell's area
+        ratio = (cells.size_z / cells.size_s)[:, None]
+        n_s = cells.count_s
+        weights = np.concatenate(
+            [ratio * np.tile(weight, n_s), 4.0 / ratio * np.ones(weight.size * (n_s - 1))], axis=1
+        )
+        return np.asarray(unknowns.conj().swapaxes(1, 2) @ (weights[..., None] * unknowns))
 
 
-def _turn(phase: FloatArray) -> ComplexArray:
-    """Return e^{j·phase}."""
-    wave = np.empty(phase.shape, dtype=np.complex128)
-    wave.real, wave.imag = np.cos(phase), np.sin(phase)
-    return wave
+@lru_cache(maxsize=64)
+def _fold_indices(n_s: int, n_z: int) -> tuple[np.ndarray, ...]:
+    """Return places in the three tables of direct and mirrored partner, and the direct sign."""
+    rows, odd = n_z // 2, n_z % 2
+    r = np.arange(rows)
+    apart, both = np.abs(r[:, None] - r), r[:, None] + r
+    # J_z edge n lies at n + odd/2, J_s cell j at j + 1/2 + odd/2: half steps in between.
+    gap = r[:, None] - r - 0.5
+
+    def places(first: int, second: int, length: int, index: np.ndarray) -> np.ndarray:
+        i, j = np.arange(first)[:, None, None, None], np.arange(second)[:, None]
+        place = (i * second + j) * length + index[:, None, :]
+        return np.asarray(place.reshape(first * rows, second * rows))
+
+    cross = (np.abs(gap) - 0.5).astype(np.intp)
+    sign = np.broadcast_to(np.sign(gap)[None, :, None, :], (n_s, rows, n_s - 1, rows))
+    return (
+        places(n_s, n_s, n_z - 1, apart),
+        places(n_s, n_s, n_z - 1, both + odd),
+        places(n_s, n_s - 1, n_z - 1, cross),
+        places(n_s, n_s - 1, n_z - 1, both + odd),
+        places(n_s - 1, n_s - 1, n_z, apart),
+        places(n_s - 1, n_s - 1, n_z, both + 1 + odd),
+        sign.reshape(n_s * rows, (n_s - 1) * rows),
+    )
+
+
+def _fold(n_s: int, n_z: int, zz: ComplexArray, zs: ComplexArray, ss: ComplexArray) -> ComplexArray:
+    """Return the matrix of a quarter from tables over distance: J_z is even in z, J_s odd."""
+    zz_one, zz_two, zs_one, zs_two, ss_one, ss_two, sign = _fold_indices(n_s, n_z)
+    size, first, total = zz.shape[0], zz_one.shape[0], zz_one.shape[0] + ss_one.shape[0]
+    zz, zs, ss = (x.reshape(size, -1) for x in (zz, zs, ss))
+    matrix = np.empty((size, total, total), dtype=np.complex128)
+    np.add(zz.take(zz_one, axis=1), zz.take(zz_two, axis=1), out=matrix[:, :first, :first])
+    np.subtract(ss.take(ss_one, axis=1), ss.take(ss_two, axis=1), out=matrix[:, first:, first:])
+    cross = zs.take(zs_one, axis=1)
+    cross *= sign
+    cross -= zs.take(zs_two, axis=1)
+    matrix[:, :first, first:] = cross
+    matrix[:, first:, :first] = cross.swapaxes(1, 2)
+    return matrix

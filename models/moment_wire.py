@@ -1,8 +1,9 @@
 """The dipole as a thin wire: currents, self impedance (Ω), near fields (V/m) and far field.
 
-Piecewise-sinusoidal modes sin(k(Δ−|z−z_m|))/sin kΔ on equal steps Δ, mirrored in z: mode 0 sits
-on the centre gap, mode m on both ±mΔ. The wire's radius is the distance between current and test line
-(reduced kernel), so a step should be longer than the radius is wide. Exact E1 integrals.
+Piecewise-sinusoidal modes sin(k(Δ−|z−z_m|))/sin kΔ on equal steps Δ, mirrored in z: mode 0 sits on
+the centre gap, mode m on both ±mΔ. The wire's radius is the distance between current and test line
+(reduced kernel), so Δ must stay a few radii long. Integrals are exact (E1). In front of plates the
+modes are combined to few `shapes`, and all that follows is per shape.
 
 Source: Richmond & Geary, IEEE Trans. AP-23 (1975); Balanis, *Antenna Theory*, 4th ed., §8.4-8.5.
 """
@@ -17,7 +18,7 @@ from scipy.special import sici
 from models.conventions import ETA0, ComplexArray, FloatArray
 from models.dipole import far_field
 
-__all__ = ["Wire"]
+__all__ = ["Wire", "driven_shapes", "sinusoidal_shape"]
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)
@@ -46,11 +47,10 @@ class Wire:
         """Return the impedance matrix of the modes in free space, Ω, (n, modes, modes)."""
         offsets = np.arange(-2 * self.modes - 1, 2 * self.modes + 2)
         span = offsets * self.step[:, None]
-        reach = np.sqrt(span**2 + self.radius[:, None] ** 2)
+        radius = self.radius[:, None]
+        reach = np.sqrt(span**2 + radius**2) + np.abs(span)
         # R + t; for t < 0 the plain sum cancels, a²/(R − t) is the same number.
-        total = np.where(span >= 0.0, reach + span, 0.0)
-        total = np.where(span < 0.0, self.radius[:, None] ** 2 / (reach + np.abs(span)), total)
-        sine, cosine = sici(self.k[:, None] * total)
+        sine, cosine = sici(self.k[:, None] * np.where(span >= 0.0, reach, radius**2 / reach))
         exponential = -cosine + 1j * (sine - np.pi / 2.0)  # E1(jk(R + t))
         electric = (self.k * self.step)[:, None]
 
@@ -69,61 +69,90 @@ class Wire:
         mutual = 1j * ETA0 / (4.0 * np.pi) / np.sin(electric) ** 2 * mutual
         m = np.arange(self.modes)
         matrix = mutual[:, np.abs(m[:, None] - m)] + mutual[:, m[:, None] + m]
-        return np.asarray(matrix * np.outer(_pair(m), _pair(m)) / 2.0)
+        return np.asarray(matrix * _pairs(self.modes))
 
-    def near_field(self, distance: FloatArray, z: FloatArray) -> tuple[ComplexArray, ComplexArray]:
-        """Return E_z and E_ρ of every mode at 1 A, V/m, each (n, n_distance, n_z, modes).
+    def near_field(
+        self, shapes: ComplexArray, distance: FloatArray, z: FloatArray, *, radial: bool
+    ) -> ComplexArray:
+        """Return E_z (or E_ρ if `radial`) of every shape, V/m, (n, n_distance, n_z, n_shape).
 
         Parameters
         ----------
+        shapes : (n, modes, n_shape)
+            Currents of the modes, A.
         distance : (n, n_distance)
             From the wire's axis, m, above 0.
         z : (n, n_z)
             Height, m.
+        radial : bool
+            Which component.
         """
         nodes = np.arange(-self.modes, self.modes + 1) * self.step[:, None]
-        k = self.k[:, None, None, None]
-        rho = distance[:, :, None, None]
         height = (z[:, :, None] - nodes[:, None, :])[:, None]
-        radius = np.sqrt(rho**2 + height**2)
-        phase = k * radius
-        wave = np.empty(radius.shape, dtype=np.complex128)
-        wave.real, wave.imag = np.cos(phase) / radius, -np.sin(phase) / radius
-        electric = (self.k * self.step)[:, None, None, None]
-        scale = 1j * ETA0 / (4.0 * np.pi) / np.sin(electric)
-        twice = 2.0 * np.cos(electric)
+        radius = np.sqrt((distance**2)[:, :, None, None] + height**2)
+        phase = self.k[:, None, None, None] * radius
+        size = height / radius if radial else 1.0 / radius
+        wave: ComplexArray = np.empty(radius.shape, dtype=np.complex128)
+        np.multiply(np.cos(phase), size, out=wave.real)
+        np.multiply(np.sin(phase), -size, out=wave.imag)
+        # Three spherical waves a mode, at its ends and its centre.
+        full = np.concatenate([shapes[:, :0:-1], shapes], axis=1)
+        electric = (self.k * self.step)[:, None, None]
+        sources = np.zeros((shapes.shape[0], nodes.shape[1], shapes.shape[2]), dtype=np.complex128)
+        sources[:, 1:-1] = -2.0 * np.cos(electric) * full
+        sources[:, 2:] += full
+        sources[:, :-2] += full
+        sources *= (1j if radial else -1j) * ETA0 / (4.0 * np.pi) / np.sin(electric)
+        size, n_s, n_z, count = wave.shape
+        field = (wave.reshape(size, -1, count) @ sources).reshape(size, n_s, n_z, -1)
+        if radial:
+            field /= distance[:, :, None, None]
+        return np.asarray(field)
 
-        def mirrored(x: ComplexArray) -> ComplexArray:
-            mode = x[..., 2:] + x[..., :-2] - twice * x[..., 1:-1]
-            centre = self.modes - 1
-            both = mode[..., centre:] + mode[..., centre::-1]
-            both[..., 0] *= 0.5
-            return both
-
-        return -scale * mirrored(wave), scale / rho * mirrored(wave * height)
-
-    def far_field(self, cosine: FloatArray) -> FloatArray:
-        """Return f of every mode at 1 A in directions cosθ (n_angle), (n, n_angle, modes)."""
+    def far_field(self, shapes: ComplexArray, cosine: FloatArray) -> ComplexArray:
+        """Return f of every shape in directions cosθ (n_angle), (n, n_angle, n_shape)."""
         k, step = self.k[:, None], self.step[:, None]
-        sine = np.sqrt(np.maximum(1.0 - cosine**2, 0.0))
-        lobe = far_field(k, 2.0 * step, sine, cosine) / np.sin(k * step)
+        lobe = far_field(k, 2.0 * step, np.sqrt(np.maximum(1.0 - cosine**2, 0.0)), cosine)
         m = np.arange(self.modes)
-        turn = (k * step * cosine)[..., None] * m
-        return np.asarray(lobe[..., None] * np.cos(turn) * _pair(m))
+        turn = np.cos((k * step * cosine)[..., None] * m) * np.where(m == 0, 1.0, 2.0)
+        turn *= (lobe / np.sin(k * step))[..., None]
+        return np.asarray(turn @ shapes)
 
     def current_square(self) -> FloatArray:
         """Return ∫ I_m I_n dz over the whole dipole, m, (n, modes, modes)."""
         x = (self.k * self.step)[:, None, None]
         sine = np.sin(x)
-        own = (x - sine * np.cos(x)) / sine**2  # ∫ sin²(k(Δ−|z|)) dz·k / sin² kΔ
-        next_ = (sine - x * np.cos(x)) / (2.0 * sine**2)
+        own = (x - sine * np.cos(x)) / sine**2
+        neighbour = (sine - x * np.cos(x)) / (2.0 * sine**2)
         m = np.arange(self.modes)
         apart, far = np.abs(m[:, None] - m), m[:, None] + m
-        total = np.where(apart == 0, own, 0.0) + np.where(apart == 1, next_, 0.0)
-        total = total + np.where(far == 0, own, 0.0) + np.where(far == 1, next_, 0.0)
-        return np.asarray(total * np.outer(_pair(m), _pair(m)) / 2.0 / self.k[:, None, None])
+        total = own * ((apart == 0) + 0.0 + (far == 0))
+        total = total + neighbour * ((apart == 1) + 0.0 + (far == 1))
+        return np.asarray(total * _pairs(self.modes) / self.k[:, None, None])
 
 
-def _pair(m: np.ndarray) -> FloatArray:
-    """Return how many wires' places a mode takes: 1 on the gap, 2 elsewhere."""
-    return np.where(m == 0, 1.0, 2.0)
+def _pairs(modes: int) -> FloatArray:
+    """Return half the number of places where two mirrored modes meet, (modes, modes)."""
+    places = np.where(np.arange(modes) == 0, 1.0, 2.0)
+    return np.outer(places, places) / 2.0
+
+
+def driven_shapes(wire: Wire, impedance: ComplexArray) -> ComplexArray:
+    """Return the current driven at the gap and the current a uniform field induces, A at 1 V.
+
+    Plates some way off add to the dipole's own field one that hardly varies along it, so these two
+    are all a dipole in front of plates carries. Shape (n, modes, 2).
+    """
+    k, step = wire.k, wire.step
+    excitation = np.zeros((k.size, wire.modes, 2))
+    excitation[:, 0, 0] = 1.0
+    # ∫ over a mode is 2 tan(kΔ/2)/k; a mode off the centre has two places.
+    excitation[:, :, 1] = (2.0 / k * np.tan(k * step / 2.0) / wire.length)[:, None]
+    excitation[:, 1:, 1] *= 2.0
+    return np.asarray(np.linalg.solve(impedance, excitation + 0j))
+
+
+def sinusoidal_shape(wire: Wire) -> ComplexArray:
+    """Return the current sin(k(h−|z|)), 1 A at its maximum, (n, modes, 1)."""
+    z = np.arange(wire.modes) * wire.step[:, None]
+    return np.asarray(np.sin(wire.k[:, None] * (wire.length[:, None] / 2.0 - z))[..., None] + 0j)

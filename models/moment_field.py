@@ -1,0 +1,172 @@
+"""Far field of currents on both plates in any set of directions.
+
+f = E_θ·r·e^{jkr} over jη/(2π) V, and the same for E_φ; per ampere of the currents given. Phase
+reference: the middle of the apex line.
+
+Source: Balanis, *Antenna Theory*, 4th ed., §12.2 (radiation integrals); cosine interpolation of an
+even band-limited function.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from functools import lru_cache
+
+import numpy as np
+
+from models.conventions import ComplexArray, FloatArray
+from models.moment_plates import Grid
+from models.pattern import CUT_ANGLES
+
+__all__ = ["Sky", "plates_far_field"]
+
+
+@dataclass(frozen=True, kw_only=True, eq=False)
+class Sky:
+    """Directions in which fields are sampled: H-cut, E-cut, then a quarter of the sphere.
+
+    Parameters
+    ----------
+    count : int
+        Samples on each cut, in the middles of equal parts of 0 to π.
+    theta, phi : (n_dir,)
+        Angle from the z axis and from boresight, radians.
+    weights : (n_dir - 2 count,)
+        Of the sphere's samples; they sum to 1.
+    interpolation : (count, n_angle)
+        From a cut's samples to `CUT_ANGLES`.
+    """
+
+    count: int
+    theta: FloatArray
+    phi: FloatArray
+    weights: FloatArray
+    interpolation: FloatArray
+
+    @classmethod
+    @lru_cache(maxsize=64)
+    def of(cls, order: int) -> Sky:
+        """Return samples for fields with harmonics up to about `order`."""
+        count = order + 6
+        cut = _middles(count)
+        # Gauss-Legendre over cosθ, upper half; equal parts of φ.
+        nodes, weights = np.polynomial.legendre.leggauss(2 * (order // 2 + 2))
+        upper = nodes > 0.0
+        theta, phi = np.arccos(nodes[upper]), _middles(order + 2)
+        flat, slope = np.full(count, np.pi / 2.0), np.abs(np.pi / 2.0 - cut)
+        behind = np.where(_forward(cut) < 0.0, np.pi, 0.0)
+        return cls(
+            count=count,
+            theta=np.concatenate([flat, slope, np.repeat(theta, phi.size)]),
+            phi=np.concatenate([cut, behind, np.tile(phi, theta.size)]),
+            weights=np.repeat(weights[upper] / phi.size, phi.size),
+            interpolation=_cosine_interpolation(count, CUT_ANGLES).T,
+        )
+
+    def cuts(self, theta: ComplexArray) -> tuple[ComplexArray, ComplexArray]:
+        """Return f_θ on the H- and E-plane cuts at `CUT_ANGLES` from samples (n, n_dir)."""
+        h_cut, e_cut = theta[:, : self.count], theta[:, self.count : 2 * self.count]
+        # Along the cut's own tangent the field is smooth through θ = 0; E_θ changes sign there.
+        tangent = e_cut * _forward(_middles(self.count))
+        e_field = np.matmul(tangent, self.interpolation) * _forward(CUT_ANGLES)
+        return np.matmul(h_cut, self.interpolation), e_field
+
+    def boresight(self, theta: ComplexArray) -> ComplexArray:
+        """Return f_θ on boresight, (n,)."""
+        return np.asarray(theta[:, : self.count] @ self.interpolation[:, 0])
+
+    def mean_square(self, theta: ComplexArray, phi: ComplexArray) -> FloatArray:
+        """Return the mean of |f|² over the sphere, (n,)."""
+        square = np.abs(theta[:, 2 * self.count :]) ** 2 + np.abs(phi) ** 2
+        return np.asarray(square @ self.weights)
+
+
+def _middles(count: int) -> FloatArray:
+    """Return the middles of `count` equal parts of 0 to π, radians."""
+    return np.asarray((np.arange(count) + 0.5) * (np.pi / count))
+
+
+def _forward(angles: FloatArray) -> FloatArray:
+    """Return 1 ahead of the antenna (up to and with 90° off boresight), −1 behind."""
+    return np.where(angles - np.pi / 2.0 > 1e-9, -1.0, 1.0)
+
+
+def _cosine_interpolation(count: int, angles: FloatArray) -> FloatArray:
+    """Return the matrix from samples in the middles to `angles`, (n_angle, count).
+
+    Exact for even functions of period 2π with harmonics below `count`.
+    """
+    order = np.arange(count)
+    weight = np.where(order == 0, 1.0, 2.0) / count
+    samples = np.cos(order[:, None] * _middles(count))
+    return np.asarray((np.cos(angles[:, None] * order) * weight) @ samples)
+
+
+def plates_far_field(
+    grid: Grid, currents: ComplexArray, sky: Sky
+) -> tuple[ComplexArray, ComplexArray]:
+    """Return f_θ (n, n_dir, m) of both plates, and f_φ off the cuts (on them it is 0).
+
+    Parameters
+    ----------
+    grid : Grid
+        The grid of the currents.
+    currents : (n, N, m)
+        Unknowns of the grid, A.
+    sky : Sky
+        Where to.
+    """
+    cells = grid.cells
+    j_z, j_s = grid.split(currents)
+    plain = 2 * sky.count
+    sine, cosine = np.sin(sky.theta), np.cos(sky.theta)
+    half = cells.apex_angle[:, None] / 2.0
+    sides = []
+    for side in (half, -half):
+        along, across = np.cos(sky.phi - side), np.sin(side - sky.phi)
+        at_cells, at_edges = _waves(grid, cells.k[:, None] * sine * along)
+        sides.append(
+            (
+                at_cells,
+                (cosine * along)[:, None] * at_edges,
+                across[:, None, plain:] * at_edges[..., plain:],
+            )
+        )
+    plate_z, plate_theta, plate_phi = (one + two for one, two in zip(*sides, strict=True))
+    edges, middles = (cells.k[:, None, None] * z[:, None] for z in grid.heights())
+    even, odd = np.cos(edges * cosine[:, None]), np.sin(middles * cosine[:, None])
+    moment_z, moment_s = (cells.k * size for size in (cells.size_z, 1j * cells.size_s))
+    even *= moment_z[:, None, None] * sine[:, None]
+    f_theta = _sum(plate_z, even, j_z)
+    scale = moment_s[:, None, None]
+    f_theta -= scale * _sum(plate_theta, odd, j_s)
+    return f_theta, -scale * _sum(plate_phi, odd[:, plain:], j_s)
+
+
+def _waves(grid: Grid, k_along: FloatArray) -> tuple[ComplexArray, ComplexArray]:
+    """Return e^{jks·(direction along the plate)} at cells and edges, (n, n_s, n_dir) each."""
+    cells = grid.cells
+    half_step = _turn(k_along * (0.5 * cells.size_s)[:, None])
+    step = half_step**2
+    at_cells = np.empty((k_along.shape[0], cells.count_s, k_along.shape[1]), dtype=np.complex128)
+    np.multiply(_turn(k_along * cells.start[:, None]), half_step, out=at_cells[:, 0])
+    for i in range(1, cells.count_s):
+        np.multiply(at_cells[:, i - 1], step, out=at_cells[:, i])
+    return at_cells, at_cells[:, :-1] * half_step[:, None]
+
+
+def _sum(along_s: ComplexArray, along_z: FloatArray, currents: ComplexArray) -> ComplexArray:
+    """Return Σ of currents (n, n_s, rows, m) times (n, n_s, n_dir) times (n, n_dir, rows)."""
+    size, n_s, rows, m = currents.shape
+    flat = currents.swapaxes(2, 3).reshape(size, n_s, m * rows)
+    over_s: ComplexArray = (along_s.swapaxes(1, 2) @ flat).reshape(size, -1, m, rows)
+    over_s *= along_z[:, :, None]
+    return np.asarray(over_s.sum(axis=3))
+
+
+def _turn(phase: FloatArray) -> ComplexArray:
+    """Return e^{j·phase}."""
+    wave = np.empty(phase.shape, dtype=np.complex128)
+    np.cos(phase, out=wave.real)
+    np.sin(phase, out=wave.imag)
+    return wave
