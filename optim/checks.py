@@ -24,8 +24,8 @@ BAND_RATIO: Final = 4.0
 
 IN_WAVELENGTHS: Final = {
     "spacing": (0.02, 3.0),
-    "plate_width": (0.05, 12.0),
-    "plate_length": (0.05, 20.0),
+    "plate_width": (0.05, 8.0),
+    "plate_length": (0.05, 8.0),
     "dipole_length": (0.1, 0.95),
     "dipole_diameter": (1e-5, 0.1),
     "length_step": (0.0, 0.25),

@@ -223,17 +223,19 @@ def analyse_design(
 
 def _print_analysis(analysis: Analysis) -> None:
     console = Console(markup=False, highlight=False, emoji=False, soft_wrap=True)
-    console.print(analysis.design.title)
-    console.print(f"model {analysis.model}: {MODELS[analysis.model].summary}\n")
-    console.print(table_of(analysis))
+    with console.capture() as table:
+        console.print(table_of(analysis))
+    print(analysis.design.title)
+    print(f"model {analysis.model}: {MODELS[analysis.model].summary}\n")
+    print(table.get())
     sizes = analysis.sizes()
     box = " × ".join(f"{sizes[f'{side}_mm']:.0f}" for side in ("width", "height", "depth"))
-    console.print(
-        f"\nwidth × height × depth {box} mm; frontal area {sizes['frontal_area_m2']:.4f} m², "
+    print(
+        f"width × height × depth {box} mm; frontal area {sizes['frontal_area_m2']:.4f} m², "
         f"sheet {sizes['sheet_area_m2']:.4f} m², mass {sizes['mass_kg']:.2f} kg"
     )
     for warning in analysis.warnings:
-        console.print(f"Note: {warning}")
+        print(f"Note: {warning}")
 
 
 def _write_analysis(analysis: Analysis, folder: Path) -> None:

@@ -290,3 +290,19 @@ def test_in_a_process_of_its_own_with_a_plain_terminal(spec: Path) -> None:
     assert run.returncode == 0
     assert b"902 to 928 MHz" in run.stdout
     assert run.stderr == b""
+
+
+def test_a_reader_that_has_seen_enough_is_no_fault(design: Path) -> None:
+    program = "import sys; from optim.cli import main; sys.exit(main())"
+    run = subprocess.Popen(
+        [sys.executable, "-c", program, "analyse", str(design), "--model", "image"],
+        stdout=subprocess.PIPE,
+        stderr=subprocess.PIPE,
+        env={"PYTHONPATH": str(Path(cli.__file__).parents[1])},
+    )
+    assert run.stdout is not None
+    assert run.stderr is not None
+    run.stdout.close()
+    with run.stderr:
+        assert run.stderr.read() == b""
+    assert run.wait() == 0
