@@ -91,7 +91,8 @@ def vswr(resistance: FloatArray, reactance: FloatArray, reference_ohm: float) ->
 def reflection(resistance: FloatArray, reactance: FloatArray, reference_ohm: float) -> FloatArray:
     """Return the magnitude of the voltage reflection coefficient; NaN stays NaN."""
     impedance = resistance + 1j * reactance
-    return np.asarray(np.abs((impedance - reference_ohm) / (impedance + reference_ohm)))
+    with np.errstate(invalid="ignore"):  # a complex NaN divided is an invalid operation
+        return np.asarray(np.abs((impedance - reference_ohm) / (impedance + reference_ohm)))
 
 
 def figures_of_merit(pattern: Pattern, terms: Terms | None = None) -> Figures:

@@ -1,0 +1,174 @@
+"""The pictures of a finished search: front, sizes, band curves, cuts and drawing of each design.
+
+Everything goes into one folder as SVG (to print) and PNG (to look at). Axes follow the goals: a
+size across, a figure upwards, a third goal by colour. Values are the worst over the band.
+"""
+
+from __future__ import annotations
+
+from pathlib import Path
+from typing import TYPE_CHECKING, Final, NamedTuple
+
+import numpy as np
+from matplotlib.figure import Figure
+
+from models import Figures, radiate
+from models.conventions import FloatArray
+from models.figures import figures_of_merit
+from optim.drawing import draw_sheet, draw_sketches
+from optim.margins import MISSING, SIZES
+from optim.plot_band import draw_band
+from optim.plot_cuts import draw_cuts
+from optim.plot_front import Axis, draw_front
+from optim.style import save
+
+if TYPE_CHECKING:
+    from optim.archive import Judged
+    from optim.requirements import Requirements
+    from optim.result import Result
+
+__all__ = ["FOLDER", "draw_run", "front_of"]
+
+FOLDER: Final = "pictures"
+
+
+class _Quantity(NamedTuple):
+    """A goal as an axis: the figure or size that a limit on it names, its words and its unit."""
+
+    figure: str
+    words: str
+    unit: str
+
+    @property
+    def label(self) -> str:
+        words = self.words if self.figure in SIZES else f"{self.words}, worst in the band"
+        return f"{words} ({self.unit})" if self.unit else words
+
+
+_QUANTITIES: Final = {
+    "frontal_area": _Quantity("frontal_area", "frontal area", "m²"),
+    "volume": _Quantity("volume", "volume of the box", "m³"),
+    "longest_side": _Quantity("longest_side", "longest side of the box", "mm"),
+    "sheet_area": _Quantity("sheet_area", "sheet area", "m²"),
+    "mass": _Quantity("mass", "mass", "kg"),
+    "wind_load": _Quantity("wind_load", "wind load", "N"),
+    "gain": _Quantity("gain_dbi", "gain", "dBi"),
+    "realized_gain": _Quantity("realized_gain_dbi", "realized gain", "dBi"),
+    "front_to_back": _Quantity("front_to_back_db", "front-to-back ratio", "dB"),
+    "beamwidth_h": _Quantity("beamwidth_h_deg", "H-plane beamwidth", "°"),
+    "beamwidth_e": _Quantity("beamwidth_e_deg", "E-plane beamwidth", "°"),
+    "vswr": _Quantity("vswr", "VSWR", ""),
+    "yield": _Quantity("yield", "yield", ""),
+}
+
+
+def draw_run(folder: Path, result: Result) -> list[Path]:
+    """Draw every picture of `result` into `folder`; return the files, in a reader's order.
+
+    Raises
+    ------
+    OSError
+        Where a file cannot be written.
+    """
+    folder.mkdir(parents=True, exist_ok=True)
+    requirements = result.requirements
+    judged, rows = result.shown()
+    pictures = {"front": front_of(result)}
+    if rows:
+        names = list(rows)
+        reflectors = result.space.reflectors(judged.designs[list(rows.values())])
+        frequencies = requirements.band.refined().frequencies()
+        pattern = radiate(
+            reflectors, frequencies, model=result.found.model, build=requirements.build
+        )
+        pictures["sizes"] = draw_sketches(reflectors, names, title=requirements.title)
+        pictures["band"] = draw_band(
+            title=requirements.title,
+            frequencies_hz=frequencies,
+            figures=figures_of_merit(pattern, requirements.terms),
+            names=names,
+            bounds=requirements.limits,
+        )
+        for row, name in enumerate(names):
+            words = name.replace("_", " ")
+            pictures[f"{name}_cuts"] = draw_cuts(
+                title=f"{words}: {requirements.title}",
+                pattern=pattern.rows([row]),
+                frequencies_hz=frequencies,
+                terms=requirements.terms,
+                model=result.found.model,
+            )
+            pictures[f"{name}_drawing"] = draw_sheet(
+                reflectors[row],
+                title=requirements.title,
+                name=name,
+                build=requirements.build,
+                band_hz=(requirements.band.low_hz, requirements.band.high_hz),
+            )
+    return [path for name, picture in pictures.items() for path in _write(picture, folder / name)]
+
+
+def front_of(result: Result) -> Figure:
+    """Return the picture of the front, or of the nearest designs where nothing meets the limits."""
+    requirements = result.requirements
+    judged, rows = result.shown()
+    across, upwards, third = _axes_of([goal.name for goal in requirements.goals])
+    gains = {"gain", "realized_gain"}
+    line = across == "frontal_area" and upwards in gains
+    return draw_front(
+        title=requirements.title,
+        x=_axis(across, result, judged),
+        y=_axis(upwards, result, judged),
+        colour=None if third is None else _axis(third, result, judged),
+        meets=np.full(len(judged), result.met),
+        recommended=rows,
+        # Of a uniformly lit aperture the low edge of the band is the worst.
+        aperture_hz=requirements.band.low_hz if line else None,
+    )
+
+
+def _axes_of(goals: list[str]) -> tuple[str, str, str | None]:
+    """Return what goes across, upwards and into colour: sizes across, figures upwards."""
+    sizes = [goal for goal in goals if goal in SIZES]
+    figures = [goal for goal in goals if goal not in SIZES]
+    if not sizes:
+        sizes = figures[1:2] or ["frontal_area"]
+    if not figures:
+        figures = sizes[1:2] or ["gain"]
+    rest = [goal for goal in goals if goal not in {sizes[0], figures[0]}]
+    return sizes[0], figures[0], rest[0] if rest else None
+
+
+def _axis(name: str, result: Result, judged: Judged) -> Axis:
+    requirements, quantity = result.requirements, _QUANTITIES[name]
+    limits = {
+        limit.sense: limit.value for limit in requirements.limits if limit.figure == quantity.figure
+    }
+    return Axis(
+        label=quantity.label,
+        unit=quantity.unit,
+        values=_values(name, result, judged, requirements),
+        minimum=limits.get("min"),
+        maximum=limits.get("max"),
+    )
+
+
+def _values(name: str, result: Result, judged: Judged, requirements: Requirements) -> FloatArray:
+    """Return a goal of every judged design in its unit, (n,); NaN where it is missing."""
+    for column, goal in enumerate(requirements.goals):
+        if goal.name == name:
+            found = judged.objectives[:, column] * (1.0 if goal.sense == "min" else -1.0)
+            found = np.where(np.abs(found) >= MISSING, np.nan, found)
+            return np.asarray(found / SIZES.get(name, 1.0))
+    if name in SIZES:
+        return np.asarray(
+            getattr(result.space.reflectors(judged.designs), name) / SIZES[name], dtype=np.float64
+        )
+    return np.asarray(judged.worst[:, Figures.names().index(_QUANTITIES[name].figure)])
+
+
+def _write(picture: Figure, stem: Path) -> list[Path]:
+    paths = [stem.with_suffix(suffix) for suffix in (".svg", ".png")]
+    for path in paths:
+        save(picture, path)
+    return paths
