@@ -39,12 +39,13 @@ def whole(judged: Judged) -> tuple[FloatArray, FloatArray]:
     return judged.objectives, judged.total_violation
 
 
-def door(limit: int) -> View:
-    """View the violation of one limit (its index) as the only goal, under all other conditions."""
+def door(limits: list[int]) -> View:
+    """View the violation of some limits (columns) as the goal, under all other conditions."""
 
     def view(judged: Judged) -> tuple[FloatArray, FloatArray]:
-        others = np.delete(judged.violations, limit, axis=1)
-        return judged.violations[:, [limit]], np.maximum(others, 0.0).sum(axis=1)
+        violated = np.maximum(judged.violations, 0.0)
+        behind = violated[:, limits].sum(axis=1)
+        return behind[:, None], np.delete(violated, limits, axis=1).sum(axis=1)
 
     return view
 

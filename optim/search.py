@@ -1,4 +1,4 @@
-"""The search: ask the genetic algorithm, evaluate, record, tell; scout cheaply, then prove.
+"""The search: scout with a cheap model, prove with a true one, check on a finer grid.
 
 The scout's model looks at the whole space. What it finds about the requirements, those tightened
 and those relaxed by a step of margin included, is handed to the proving model, and the search goes
@@ -9,7 +9,6 @@ in the way is taken down in turn, to see what lies behind it.
 
 from __future__ import annotations
 
-from collections import deque
 from collections.abc import Callable
 from dataclasses import dataclass, replace
 from typing import Final
@@ -20,24 +19,22 @@ from scipy.stats import qmc
 from models import MODELS
 from models.conventions import FloatArray
 from optim.archive import Archive, IntArray, Judged, diverse, nondominated
+from optim.doors import open_doors
 from optim.evaluate import Evaluator
+from optim.evolve import evolve
 from optim.journal import Journal
 from optim.margins import Judge
 from optim.precheck import blind_spots
-from optim.problem import View, door, genetic, whole
 from optim.progress import Progress
 from optim.recommend import front_rows, nearest_rows, relaxation_rows, sorted_rows
 from optim.referee import Referee
 from optim.requirements import Goal, Requirements
 from optim.space import DesignSpace
 
-__all__ = ["Found", "Standstill", "evolve", "scouted", "search"]
+__all__ = ["Found", "scouted", "search"]
 
 FIRST_SAMPLE: Final = 4
 """Designs in the scout's first generation, as a multiple of the population."""
-
-MOVED: Final = 0.01
-"""A front has moved if a design on it is ahead of all before by this share of its extent."""
 
 SCOUT_PATIENCE: Final = 12
 PROVE_PATIENCE: Final = 5
@@ -48,10 +45,6 @@ LEVELS: Final = (-1.0, -0.5, 0.0, 0.5, 1.0)
 """Violations, in steps of margin, about which designs are handed from scout to prover."""
 
 CHECK_ROUNDS: Final = 12
-DOOR_GENERATIONS: Final = 20
-DOOR_POPULATION: Final = 24
-NEAREST: Final = 3
-"""Nearest designs whose violated limits are taken down in turn."""
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)
@@ -134,7 +127,7 @@ def search(
         )
     front = settled(deciding, checking, front_rows)
     if not len(front):
-        open_doors(scouting, deciding, rng, progress)
+        open_doors(requirements, scouting, deciding, rng, progress)
         front = settled(deciding, checking, front_rows)
     nearest = relaxed = front[:0]
     if not len(front):
@@ -151,98 +144,6 @@ def search(
         model=decider.model,
         evaluations=evaluations,
     )
-
-
-def evolve(
-    referee: Referee,
-    start: FloatArray,
-    *,
-    population: int,
-    generations: int,
-    rng: np.random.Generator,
-    progress: Progress,
-    patience: int | None = None,
-    view: View = whole,
-) -> None:
-    """Let designs breed and be judged by `referee`, whose archive holds the outcome.
-
-    Parameters
-    ----------
-    referee : Referee
-    start : (n_start, n_var)
-        The first generation.
-    population, generations : int
-        Designs a generation, and the most generations after the first.
-    rng : numpy.random.Generator
-    progress : Progress
-    patience : int, optional
-        Stop after so many generations in which the front did not move; None goes on to the end.
-    view : View
-        Objectives and conditions of this search.
-    """
-    rule = Standstill(patience or generations + 1)
-    algorithm = genetic(
-        referee.space,
-        referee.archive,
-        start,
-        population=population,
-        n_goals=view(referee.archive.all)[0].shape[1],
-        rng=rng,
-    )
-    with progress.stage(f"{referee.stage} ({referee.model})", generations + 1) as told:
-        for _ in range(generations + 1):
-            asked = algorithm.ask()
-            if asked is None:
-                return
-            objectives, violation = view(referee.judge(asked.get("X")))
-            asked.set("F", objectives, "G", violation[:, None])
-            algorithm.tell(infills=asked)
-            told(referee)
-            if rule.reached(referee.archive):
-                return
-
-
-class Standstill:
-    """Whether a search has stopped to move for `patience` generations.
-
-    While nothing is feasible, what must move is the least violation.
-    """
-
-    def __init__(self, patience: int) -> None:
-        self._fronts: deque[FloatArray] = deque(maxlen=patience + 1)
-        self._misses: deque[float] = deque(maxlen=patience + 1)
-
-    def reached(self, archive: Archive) -> bool:
-        """Return whether it stands still, after one more generation."""
-        self._fronts.append(archive.front.objectives)
-        self._misses.append(archive.least_violation)
-        if len(self._fronts) < (self._fronts.maxlen or 0):
-            return False
-        if not len(self._fronts[-1]):
-            return self._misses[-1] > (1.0 - MOVED) * self._misses[0]
-        return advance(self._fronts[0], self._fronts[-1]) < MOVED
-
-
-def advance(before: FloatArray, now: FloatArray) -> float:
-    """Return how far a front has moved, as a share of its extent.
-
-    Parameters
-    ----------
-    before, now : (n, n_goals)
-        Objectives, to be minimised.
-
-    Returns
-    -------
-    float
-        The least shift of all of `before` that leaves no design of `now` ahead (the additive
-        ε-indicator of Zitzler et al. 2003); infinite where there was no front before.
-    """
-    if not len(before):
-        return np.inf
-    extent = np.ptp(now, axis=0)
-    scale = np.where(extent > 0.0, extent, np.maximum(np.abs(now[0]), 1e-12))
-    ahead = ((before[:, None, :] - now[None, :, :]) / scale).max(axis=2)
-    return float(ahead.min(axis=0).max())
 
 
 def first_sample(space: DesignSpace, count: int, rng: np.random.Generator) -> FloatArray:
@@ -294,37 +195,6 @@ def checked(judged: Judged, checks: Archive) -> Judged:
     for place, key in enumerate(checks.all.keys):
         order[places[key]] = len(judged) + place
     return Judged.concatenate([judged, checks.all])[order]
-
-
-def open_doors(
-    scouting: Referee, deciding: Referee, rng: np.random.Generator, progress: Progress
-) -> None:
-    """Look behind every limit that the nearest designs violate: how nearly can it be met."""
-    known = deciding.archive.all
-    nearest = known[np.argsort(known.total_violation, kind="stable")[:NEAREST]]
-    for limit in np.flatnonzero((nearest.margins < 0.0).any(axis=0)):
-        label = deciding.labels[limit]
-        stages = [deciding] if label not in scouting.labels else [scouting, deciding]
-        start = np.empty((0, known.designs.shape[1]))
-        for referee in dict.fromkeys(stages):
-            view = door(referee.labels.index(label))
-            best = behind(referee.archive.all, view, DOOR_POPULATION)
-            evolve(
-                referee,
-                np.unique(np.concatenate([start, best]), axis=0),
-                population=DOOR_POPULATION,
-                generations=DOOR_GENERATIONS if referee is scouting else DOOR_GENERATIONS // 2,
-                rng=rng,
-                progress=progress,
-                view=view,
-            )
-            start = behind(referee.archive.all, view, DOOR_POPULATION)
-
-
-def behind(judged: Judged, view: View, count: int) -> FloatArray:
-    """Return the `count` designs that meet a door's conditions best, then come nearest to it."""
-    objectives, others = view(judged)
-    return judged.designs[np.lexsort((objectives[:, 0], others))[:count]]
 
 
 def scouted(requirements: Requirements, space: DesignSpace, model: str) -> Requirements:

@@ -13,9 +13,7 @@ from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from models import evaluate
-from optim.archive import Archive, Judged
 from optim.run import JOURNAL, Options, run
-from optim.search import Standstill, advance
 from optim.space import DesignSpace
 from tests.search_specs import EASY, IMPOSSIBLE, read, write
 
@@ -152,20 +150,3 @@ def test_relaxing_opens_the_door_as_far_as_exhaustion_does(tmp_path: Path) -> No
     assert best["gain_dbi.min"] - 0.2 < offered["gain_dbi.min"] <= best["gain_dbi.min"]
     assert best["beamwidth_h_deg.max"] <= offered["beamwidth_h_deg.max"]
     assert offered["beamwidth_h_deg.max"] < best["beamwidth_h_deg.max"] + 0.5
-
-
-def test_advance_is_the_share_of_the_extent() -> None:
-    before = np.array([[0.0, 10.0], [1.0, 0.0]])
-    assert advance(before, before) == 0.0
-    assert advance(before, np.array([[0.0, 9.0], [1.0, 0.0]])) == pytest.approx(1 / 9)
-    assert advance(np.empty((0, 2)), before) == np.inf
-    assert advance(before, np.array([[0.0, 10.0], [0.5, 5.0], [1.0, 0.0]])) == pytest.approx(0.5)
-
-
-def test_standstill_waits_its_patience() -> None:
-    archive = Archive(Judged.none(1, (2, 1, 1, 1)))
-    numbers = np.array([[1.0, 2.0, 0.5, -0.5, 9.0], [2.0, 1.0, 0.5, -0.5, 9.0]])
-    archive.add(Judged.from_numbers(np.array([[0.0], [1.0]]), numbers, (2, 1, 1, 1)))
-    rule = Standstill(3)
-    reached = [rule.reached(archive) for _ in range(5)]
-    assert reached == [False, False, False, True, True]
