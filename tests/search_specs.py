@@ -38,6 +38,30 @@ IMPOSSIBLE = (
     .replace("apex_angle_deg = [60, 90]", "apex_angle_deg = 90")
 )
 
+SMALL = """
+title = "Small"
+[band]
+low_mhz = 420
+high_mhz = 440
+points = 3
+[require]
+resistance_ohm = { min = 45 }
+[size]
+depth_mm = { max = 230 }
+[search]
+apex_angle_deg = 90
+plate_width_mm = 300
+plate_length_mm = 400
+dipole_length_mm = 330
+[build]
+length_step_mm = 5
+[run]
+population = 20
+generations = 8
+scout = "image"
+prove = "none"
+"""
+
 
 def write(folder: Path, text: str = EASY) -> Path:
     """Write a requirements file and return its path."""
