@@ -6,9 +6,10 @@ import numpy as np
 import pytest
 from scipy.special import hankel2
 
-from models import MODELS, Build, Reflectors, wedge
+from models import MODELS, Build, Reflectors, moment, wedge
 from models.conventions import C0, ComplexArray, FloatArray
-from models.modal import line_source, line_source_directivity, radiate
+from models.dipole import mutual_impedance
+from models.modal import input_impedance, line_source, line_source_directivity, radiate
 
 TAU = 2.0 * np.pi
 
@@ -167,6 +168,52 @@ def test_directivity_is_field_over_the_whole_sphere() -> None:
     np.testing.assert_allclose(result.h_field[..., 0], result.e_field[..., 0], rtol=1e-12)
     np.testing.assert_allclose(result.h_field[..., -1], result.e_field[..., -1], rtol=1e-12)
     np.testing.assert_allclose(result.e_field[..., result.angles.size // 2], 0.0, atol=1e-12)
+
+
+def dipole_impedance(alpha_deg: float, spacing: float, width: float) -> complex:
+    return input_impedance(
+        wavenumber=TAU,
+        apex_angle=np.radians(alpha_deg),
+        spacing=spacing,
+        width=width,
+        length=0.5,
+        radius=0.005,
+    )
+
+
+@pytest.mark.parametrize(
+    ("alpha_deg", "spacing", "width"),
+    [(90.0, 0.5, 1.0), (40.0, 0.7, 1.0), (120.0, 0.3, 0.32), (90.0, 0.5, 0.4), (180.0, 0.25, 0.5)],
+)
+def test_power_in_is_power_out(alpha_deg: float, spacing: float, width: float) -> None:
+    """Induced voltage at the feed, near field, against the far field over the sphere."""
+    radiated = radiate(corner(spacing, width, alpha_deg), np.array([C0])).resistance[0, 0]
+    own = mutual_impedance(TAU, 0.5, 0.005) - mutual_impedance(TAU, 0.5, 1e-6)
+    accepted = dipole_impedance(alpha_deg, spacing, width).real - own.real
+    assert accepted == pytest.approx(radiated, abs=0.05)
+
+
+def test_reactance_is_continuous_as_the_feed_passes_the_rims() -> None:
+    """Inside, the infinite corner is taken out, outside the dipole alone: two different sums."""
+    below, above = (dipole_impedance(90.0, spacing, 0.4) for spacing in (0.3999, 0.4001))
+    assert below == pytest.approx(above, abs=1.0)
+
+
+def test_long_plates_of_the_full_wave_model() -> None:
+    """`moment`, plates 3 λ long, imposed current: its edges and currents know nothing of modes."""
+    designs = Reflectors(
+        apex_angle=np.pi / 2.0,
+        spacing=[0.35, 0.5],
+        plate_width=[0.7, 0.4],
+        plate_length=3.0,
+        dipole_length=0.5,
+        dipole_diameter=0.01,
+    )
+    lossless = Build(conductivity=np.inf)
+    there = moment.radiate(designs, np.array([C0]), lossless, feed="sinusoidal")
+    here = radiate(designs, np.array([C0]))
+    np.testing.assert_allclose(here.resistance, there.resistance, atol=0.3)
+    np.testing.assert_allclose(here.reactance, there.reactance, atol=0.6)
 
 
 def test_wide_plates_give_the_infinite_corners_resistance() -> None:
