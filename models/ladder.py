@@ -9,7 +9,7 @@ from typing import Final
 import numpy as np
 from numpy.typing import ArrayLike
 
-from models import images, modal, moment
+from models import images, modal, moment, ray
 from models.build import Build
 from models.conventions import FloatArray
 from models.figures import Figures, Terms, figures_of_merit
@@ -36,9 +36,14 @@ MODELS: Final[dict[str, Model]] = {
         summary="image sources, infinite plates, apex angle 180°/n",
         gives_match=False,
     ),
+    "ray": Model(
+        radiate=ray.radiate,
+        summary="images, apex, rims and plate ends by rays, sinusoidal current",
+        gives_match=False,
+    ),
     "modal": Model(
         radiate=lambda reflectors, frequencies, _build: modal.radiate(reflectors, frequencies),
-        summary="exact mode matching, plates of finite width, endless along the dipole",
+        summary="exact mode matching, plates endless along the dipole, sinusoidal current",
         gives_match=False,
     ),
     "moment": Model(

@@ -1,0 +1,110 @@
+"""Diffraction at the edge of a thin plate: Fresnel's tail and what it makes of the plate's current.
+
+Everything is a function of ζ, ζ² being the detour over the edge in radians: k(path over the edge −
+direct path). For a half-plane these are Sommerfeld's exact results; the current on it is that of
+geometrical optics times `soft` (E along the edge) or `hard` (H along the edge). They stay finite at
+every shadow boundary. The transition function of the uniform theory is the same tail rescaled.
+
+Single precision throughout: a ray sum needs no more, and current numpy computes sines of single
+numbers some fifty times faster than of double ones.
+
+Source: Sommerfeld 1896; Kouyoumjian & Pathak, Proc. IEEE 62 (1974); Macdonald 1915.
+"""
+
+from __future__ import annotations
+
+from typing import Final
+
+import numpy as np
+from numpy.typing import ArrayLike, NDArray
+from scipy.special import wofz
+
+from models.conventions import ComplexArray
+
+__all__ = [
+    "SingleArray",
+    "WaveArray",
+    "hard",
+    "shed",
+    "soft",
+    "spread",
+    "tail",
+    "transition",
+    "turn",
+]
+
+SingleArray = NDArray[np.float32]
+WaveArray = NDArray[np.complex64]
+
+_EDGE: Final = complex(np.exp(-0.25j * np.pi) / np.sqrt(np.pi))
+
+_STEPS: Final = 512
+_REACH: Final = 32
+"""The tail is tabulated `_STEPS` to the unit up to `_REACH` (a detour of 160 wavelengths) and read
+off by straight lines, to 2e-5; beyond it keeps the last value, below 0.01."""
+
+
+def transition(x: ArrayLike) -> ComplexArray:
+    """Return F(x) = 2j√x·e^{jx} ∫_√x^∞ e^{−jt²} dt of the uniform theory, x >= 0, double precision."""
+    root = np.sqrt(np.asarray(x, dtype=np.float64))
+    return np.asarray(np.sqrt(np.pi) * np.exp(0.25j * np.pi) * root * _still_tail(root) * 2.0)
+
+
+def _still_tail(zeta: NDArray[np.float64]) -> ComplexArray:
+    """Return e^{+jζ²}·Q(ζ), from the Faddeeva function."""
+    return np.asarray(0.5 * wofz(1j * np.exp(0.25j * np.pi) * zeta))
+
+
+def _table() -> tuple[WaveArray, WaveArray]:
+    zeta = np.arange(_STEPS * _REACH + 2) / _STEPS
+    values = np.exp(-1j * zeta * zeta) * _still_tail(zeta)
+    rises = np.append(np.diff(values[:-1]), [0.0, 0.0])
+    return values.astype(np.complex64), rises.astype(np.complex64)
+
+
+_VALUES, _RISES = _table()
+
+
+def turn(phase: SingleArray) -> WaveArray:
+    """Return e^{−j·phase} (radians, any shape)."""
+    out = np.empty(phase.shape, dtype=np.complex64)
+    out.real = np.cos(phase)
+    out.imag = np.sin(-phase)
+    return out
+
+
+def tail(zeta: SingleArray) -> WaveArray:
+    """Return Fresnel's tail Q(ζ) = e^{jπ/4}/√π ∫_ζ^∞ e^{−jt²} dt; Q(0) = ½, ζ >= 0."""
+    place = zeta * np.float32(_STEPS)
+    index = place.astype(np.int32)
+    out = np.take(_RISES, index, mode="clip")
+    out *= place - index.astype(np.float32)
+    out += np.take(_VALUES, index, mode="clip")
+    return out
+
+
+def hard(zeta: SingleArray) -> WaveArray:
+    """Return the current near an edge along H over that without the edge; 0 at the edge."""
+    out = tail(zeta)
+    out *= -2.0
+    out += 1.0
+    return out
+
+
+def soft(zeta: SingleArray) -> WaveArray:
+    """Return the current near an edge along E over that without the edge; 1/ζ at the edge."""
+    return hard(zeta) + shed(zeta)
+
+
+def shed(zeta: SingleArray) -> WaveArray:
+    """Return e^{−jπ/4}·e^{−jζ²}/(√π·ζ): the current along an edge that a wave leaves there."""
+    return turn(zeta * zeta) * (np.complex64(_EDGE) / zeta)
+
+
+def spread(direct: SingleArray, over: SingleArray) -> SingleArray:
+    """Return √(2R²/(R'(R' + R))): what the tail needs for a point source at finite distance.
+
+    Leading term of Macdonald's integral for a point source and a half-plane; `direct` R and `over`
+    R' in one unit.
+    """
+    return np.asarray(direct * np.sqrt(2.0 / (over * (over + direct))))

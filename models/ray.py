@@ -1,0 +1,166 @@
+"""`ray`: the finite corner by rays at the plates and radiation of the currents they leave there.
+
+Far fields on both cuts; impedance and radiated power by reaction of the currents on the dipole's
+sinusoidal current (induced EMF). Currents: `models.ray_currents`. Integrals over s and z are Gauss-
+Jacobi sums with the weight of a plate edge, (1 − x)^{-1/2}.
+
+Valid from w, L of about 0.6 λ.
+"""
+
+from __future__ import annotations
+
+from typing import Final
+
+import numpy as np
+from scipy.special import roots_jacobi
+
+from models.build import Build
+from models.conventions import ETA0, ComplexArray, FloatArray, wavenumber
+from models.dipole import far_field, mutual_impedance, near_field, terminal
+from models.edges import turn
+from models.geometry import Reflectors
+from models.pattern import CUT_ANGLES, Pattern
+from models.ray_currents import Corners, currents
+
+__all__ = ["radiate"]
+
+_BLOCK: Final = 24_000
+"""Points on the plates that are held at once: what fits a processor's cache."""
+
+
+def radiate(reflectors: Reflectors, frequencies_hz: FloatArray, build: Build) -> Pattern:
+    """Return the pattern of every design (n) at every frequency (n_freq).
+
+    Parameters
+    ----------
+    reflectors : Reflectors
+        n designs.
+    frequencies_hz : (n_freq,)
+        Hz.
+    build : Build
+        Its conductivity sets the loss of plates and dipole.
+    """
+    k = wavenumber(frequencies_hz)
+    pairs = reflectors.matrix()[:, None, :] * np.where(np.arange(6) == 0, 1.0, k[:, None])
+    pairs = pairs.reshape(-1, 6)
+    skin = np.broadcast_to(
+        np.sqrt(k * ETA0 / (2.0 * build.conductivity)), (len(reflectors), k.size)
+    )
+    shape, angles = (len(reflectors), k.size), CUT_ANGLES
+    fields = np.empty((2, pairs.shape[0], angles.size), dtype=np.complex128)
+    numbers = np.empty((4, pairs.shape[0]))
+    counts = _node_counts(pairs)
+    order = np.lexsort((pairs[:, 0], counts[:, 1], counts[:, 0]))
+    start = 0
+    while start < order.size:
+        n_s, n_z = counts[order[start]]
+        same = np.all(counts[order[start:]] == (n_s, n_z), axis=1)
+        length = int(same.argmin()) if not same.all() else same.size
+        rows = order[start : start + min(length, max(1, _BLOCK // int(n_s * n_z)))]
+        fields[:, rows], numbers[:, rows] = _solve(pairs[rows], skin.reshape(-1)[rows], n_s, n_z)
+        start += rows.size
+    power, resistance, reactance, efficiency = numbers.reshape(4, *shape)
+    return Pattern(
+        angles=angles,
+        h_field=fields[0].reshape(*shape, -1),
+        e_field=fields[1].reshape(*shape, -1),
+        power=power,
+        resistance=resistance,
+        reactance=reactance,
+        efficiency=efficiency,
+        doubt_db=np.full(shape, np.nan),
+    )
+
+
+def _node_counts(pairs: FloatArray) -> np.ndarray:
+    """Return nodes along s and along half the length, (n, 2) integers."""
+    width, half = pairs[:, 2], pairs[:, 3] / 2.0
+    # A Gauss sum needs half a node a radian of phase and a few more; coarse steps keep blocks few.
+    along_s = 4.0 * np.ceil((0.6 * width + 8.0) / 4.0)
+    along_z = 2.0 * np.ceil((0.5 * half + 3.0) / 2.0)
+    return np.stack([along_s, along_z], axis=1).astype(np.intp)
+
+
+def _nodes(size: FloatArray, count: int) -> tuple[FloatArray, FloatArray]:
+    """Return places in (0, size) and weights for integrands with a plate edge at `size`, (n, count)."""
+    x, weights = roots_jacobi(count, -0.5, 0.0)
+    weights = weights * np.sqrt(1.0 - x) / 2.0
+    return size[:, None] * (1.0 + x) / 2.0, size[:, None] * weights
+
+
+def _solve(
+    pairs: FloatArray, skin: FloatArray, n_s: int, n_z: int
+) -> tuple[ComplexArray, FloatArray]:
+    """Return both cuts (2, n, n_angle) and power, resistance, reactance, efficiency (4, n)."""
+    alpha, spacing, width, length, dipole, diameter = pairs.T
+    s, weight_s = _nodes(width, n_s)
+    z, weight_z = _nodes(length / 2.0, n_z)
+    corners = Corners(
+        apex_angle=_single(alpha),
+        spacing=_single(spacing),
+        plate_width=_single(width),
+        plate_length=_single(length),
+        dipole_length=_single(dipole),
+        s=s.astype(np.float32)[:, :, None],
+        z=z.astype(np.float32)[:, None, :],
+    )
+    along_z, along_s = currents(corners)
+    weight = (weight_s[:, :, None] * weight_z[:, None, :]).astype(np.float32)
+    h_field, e_field = _cuts(corners, along_z * weight, along_s * weight)
+    # Reaction on the dipole: both plates, both halves; the dipole's field is that for 1 A.
+    distance = np.sqrt(
+        (s - (spacing * np.cos(alpha / 2.0))[:, None]) ** 2
+        + ((spacing * np.sin(alpha / 2.0))[:, None]) ** 2
+    )
+    field = near_field(1.0, dipole[:, None, None], distance[:, :, None], z[:, None, :])
+    added = -4.0 * (field * along_z * weight).sum(axis=(1, 2))
+    own = mutual_impedance(1.0, dipole, diameter / 2.0)
+    radiated = own.real + added.real
+    density = along_z.real**2 + along_z.imag**2 + along_s.real**2 + along_s.imag**2
+    plates = 4.0 * (density * weight).sum(axis=(1, 2), dtype=np.float64)
+    rod = (dipole - np.sin(dipole)) / 2.0 / (np.pi * diameter)  # ∫ sin²(h − |z|) dz over 2πa
+    lost = skin * (plates + rod)
+    gap = terminal(own + added + lost, 1.0, dipole)
+    return np.stack([h_field, e_field]), np.stack(
+        [np.pi / ETA0 * radiated, gap.real, gap.imag, radiated / (radiated + lost)]
+    )
+
+
+def _single(column: FloatArray) -> FloatArray:
+    return np.asarray(column, dtype=np.float32)[:, None, None]  # type: ignore[return-value]
+
+
+def _cuts(
+    c: Corners, moment_z: ComplexArray, moment_s: ComplexArray
+) -> tuple[ComplexArray, ComplexArray]:
+    """Return f on the H- and the E-plane cut, (n, n_angle) each, of weighed currents.
+
+    Turning an angle ψ into π − ψ conjugates every phase of the plates: half the angles do.
+    """
+    half_count = CUT_ANGLES.size // 2 + 1
+    angles = CUT_ANGLES.astype(np.float32)
+    psi = angles[:half_count, None]
+    half, spacing, length = 0.5 * c.apex_angle, c.spacing[:, :, 0], c.dipole_length[:, :, 0]
+    s, z = c.s.swapaxes(1, 2), c.z
+    toward = turn(-s * np.cos(psi - half)) + turn(-s * np.cos(psi + half))
+    h_plates = _both(toward, moment_z.sum(axis=2)[:, :, None])[..., 0]
+    ahead = turn(-spacing * np.cos(angles))
+    h_field = far_field(1.0, length, 1.0, 0.0) * ahead + h_plates
+    # E-plane: 2·½·2 for both plates, the factor of a current, both halves.
+    tilt = turn(-s * (np.cos(psi) * np.cos(half)))
+    height = z * np.sin(psi)
+    mirror = np.concatenate([np.arange(half_count), np.arange(half_count - 2, -1, -1)])
+    even = (_both(tilt, moment_z) * np.cos(height)[:, mirror]).sum(axis=-1)
+    odd = (_both(tilt, moment_s) * np.sin(height)[:, mirror]).sum(axis=-1)
+    sine, cosine = np.abs(np.cos(CUT_ANGLES)), np.sin(CUT_ANGLES)
+    toward_rear = np.where(CUT_ANGLES <= np.pi / 2.0, 1.0, -1.0)
+    e_plates = 2.0 * sine * even - 2j * (cosine * toward_rear) * np.cos(half[:, :, 0]) * odd
+    e_field = far_field(1.0, length, sine, cosine) * ahead + e_plates
+    return h_field, e_field
+
+
+def _both(phases: ComplexArray, moments: ComplexArray) -> ComplexArray:
+    """Return phases @ moments on all angles, the phases of those past 90° by conjugation."""
+    front = phases @ moments
+    back = phases.conj() @ moments
+    return np.concatenate([front, back[:, -2::-1]], axis=1)

@@ -1,0 +1,319 @@
+"""Currents on both plates by rays: images, apex, rims and plate ends. Lengths times k, A·k/m for 1 A.
+
+The corner is unfolded. A plate is lit by the dipole and by its images behind the other plate, at
+(2j + 1)·α/2 from the plate's face; each gives the current of geometrical optics, −2·H·n/ρ, times
+what its edges do to it (`models.edges`, detour of the ray from the dipole's centre):
+
+- the rim s = w lies along E: `soft`. What the other plate's rim diffracts, straight or by way of
+  reflections, adds as if from that rim.
+- the ends z = ±L/2 lie along H: `hard`, one end's wave stopped again by the other end. The current
+  along s that an oblique ray leaves at the end belongs to it. What the other plate's ends diffract,
+  H and E along that end, adds likewise. Ends are of finite extent: Fresnel's tail about the corners.
+- the apex diffracts what images leave out when α is not 180°/n: exact for endless plates, the
+  integral of Oberhettinger and of Biot & Tolstoy integrated by parts.
+
+Valid from w, L of about 0.6 λ; finite and continuous in all dimensions. Every term holds the dipole's
+exact near field, so nothing is asymptotic but the detours.
+
+Source: Kouyoumjian & Pathak, Proc. IEEE 62 (1974); Sommerfeld 1896; Macdonald 1915; Biot & Tolstoy,
+J. Acoust. Soc. Am. 29 (1957).
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import Final
+
+import numpy as np
+
+from models.conventions import ComplexArray, FloatArray
+from models.edges import hard, shed, soft, spread, tail, turn
+
+__all__ = ["Corners", "currents"]
+
+_APEX_NODES: Final = 6
+_APEX_REACH: Final = 3.6
+_TINY: Final = 1e-12
+
+
+@dataclass(frozen=True, kw_only=True, eq=False)
+class Corners:
+    """Corners in order of rising apex angle, and the points on their plates; lengths times k.
+
+    Parameters
+    ----------
+    apex_angle, spacing, plate_width, plate_length, dipole_length : (n, 1, 1)
+        Radians, and lengths times k.
+    s, z : (n, n_s, 1), (n, 1, n_z)
+        Distance from the apex line, and height over the middle, z >= 0.
+    """
+
+    apex_angle: FloatArray
+    spacing: FloatArray
+    plate_width: FloatArray
+    plate_length: FloatArray
+    dipole_length: FloatArray
+    s: FloatArray
+    z: FloatArray
+
+    def first(self, count: int) -> Corners:
+        """Return the first `count` corners, views of the same memory."""
+        return Corners(**{name: value[:count] for name, value in vars(self).items()})
+
+    def count(self, orders: float) -> int:
+        """Return how many corners have `orders` times the apex angle below π."""
+        return int(np.count_nonzero(orders * self.apex_angle < np.pi - 1e-6))
+
+
+class _Sources:
+    """The dipole and its images as our plate sees them, q·α/2 from its face; each computed once."""
+
+    def __init__(self, corners: Corners) -> None:
+        self._corners = corners
+        self._known: dict[int, tuple[FloatArray, FloatArray, ComplexArray]] = {}
+
+    def __call__(self, q: int, count: int) -> tuple[FloatArray, FloatArray, ComplexArray]:
+        """Return ρ, direct path and H_φ (exact, 1 A) of source q for the first `count` corners."""
+        known = self._known.get(q)
+        if known is None or known[0].shape[0] < count:
+            c = self._corners.first(count)
+            along = c.s - c.spacing * np.cos(0.5 * q * c.apex_angle)
+            rho2 = along * along + (c.spacing * np.sin(0.5 * q * c.apex_angle)) ** 2
+            rho = np.sqrt(rho2)
+            known = rho, np.sqrt(rho2 + c.z * c.z), magnetic_field(rho, c.z, c.dipole_length)
+            self._known[q] = known
+        rho, direct, field = known
+        return rho[:count], direct[:count], field[:count]
+
+
+def magnetic_field(rho: FloatArray, z: FloatArray, length: FloatArray) -> ComplexArray:
+    """Return H_φ of the dipole for 1 A, exact, at transverse distance `rho` and height `z`."""
+    half = 0.5 * length
+    rho2 = rho * rho
+    total = turn(np.sqrt(rho2 + (z - half) ** 2))
+    total += turn(np.sqrt(rho2 + (z + half) ** 2))
+    total -= 2.0 * np.cos(half) * turn(np.sqrt(rho2 + z * z))
+    total *= 0.25j / np.pi
+    total /= rho
+    return total
+
+
+def currents(corners: Corners) -> tuple[ComplexArray, ComplexArray]:
+    """Return the current densities along z and along s at the points, (n, n_s, n_z)."""
+    sources = _Sources(corners)
+    along_z, along_s, at_ends = _apex(corners)
+    orders = int(np.ceil(np.pi / float(corners.apex_angle[0, 0, 0])))
+    ends_of_first: ComplexArray = at_ends
+    for j in range(orders):
+        n = corners.count(j + 0.5)
+        if n:
+            z_part, s_part, at_ends = _image(corners.first(n), sources, j)
+            along_z[:n] += z_part
+            along_s[:n] += s_part
+            if j == 0:
+                ends_of_first = at_ends
+    for m in range(1, 2 * orders):
+        n = corners.count(m / 1.5)
+        if n:
+            along_z[:n] += _rim(corners.first(n), sources, m) * ends_of_first[:n]
+        n = corners.count(m)
+        if n:
+            along_z[:n] += _ends(corners.first(n), sources, m)
+    return along_z, along_s
+
+
+def _root(square: FloatArray) -> FloatArray:
+    return np.asarray(np.sqrt(np.maximum(square, _TINY)))
+
+
+def _sign(order: int) -> float:
+    return -1.0 if order % 2 else 1.0
+
+
+def _image(
+    c: Corners, sources: _Sources, j: int
+) -> tuple[ComplexArray, ComplexArray, ComplexArray]:
+    """Return the current of image j with its own plate's rim and ends, and the factor of the ends."""
+    w, turned = c.plate_width, (j + 0.5) * c.apex_angle
+    along, normal = c.spacing * np.cos(turned), c.spacing * np.sin(turned)
+    rho, direct, field = sources(2 * j + 1, c.s.shape[0])
+    optics = field * (-2.0 * _sign(j) * normal / rho)
+    over = np.sqrt((np.sqrt((w - along) ** 2 + normal**2) + w - c.s) ** 2 + c.z * c.z)
+    at_rim = 1.0 + (soft(_root(over - direct)) - 1.0) * spread(direct, over)
+    at_ends, oblique = _own_ends(c, direct, along, normal)
+    return optics * at_rim * at_ends, optics * oblique * hard(_root(2.0 * (w - c.s))), at_ends
+
+
+def _apex(c: Corners) -> tuple[ComplexArray, ComplexArray, ComplexArray]:
+    """Return the current of the wave the apex diffracts, and the factor of the ends."""
+    s, z, w, spacing = c.s, c.z, c.plate_width, c.spacing
+    p = np.pi / c.apex_angle
+    cosine2 = np.cos(np.pi * p) ** 2
+    nodes, weights = np.polynomial.legendre.leggauss(_APEX_NODES)
+    total = np.zeros(np.broadcast_shapes(s.shape, z.shape), dtype=np.result_type(s, 1j))
+    for node, weight in zip(nodes.tolist(), weights.tolist(), strict=True):
+        y = _APEX_REACH * ((node + 1.0) / 2.0) ** 2  # crowded towards the pole of the kernel
+        step = _APEX_REACH * (node + 1.0) / 2.0 * weight
+        rise = np.sinh(p * y)
+        rho = np.sqrt(spacing**2 + s * s + (2.0 * float(np.cosh(y))) * spacing * s)
+        kernel = (2.0 * step * float(np.sinh(y))) * rise / (rise * rise + cosine2) * spacing / rho
+        total += kernel * magnetic_field(rho, z, c.dipole_length)
+    optics = total * (-p / np.pi * np.sin(np.pi * p))
+    direct = np.sqrt((spacing + s) ** 2 + z * z)
+    over = np.sqrt((spacing + 2.0 * w - s) ** 2 + z * z)
+    at_ends, oblique = _own_ends(c, direct, -spacing, np.zeros_like(spacing))
+    along_z = optics * soft(_root(over - direct)) * at_ends
+    return along_z, optics * oblique * hard(_root(2.0 * (w - s))), at_ends
+
+
+def _own_ends(
+    c: Corners, direct: FloatArray, along: FloatArray, normal: FloatArray
+) -> tuple[ComplexArray, ComplexArray]:
+    """Return what the plate's own ends make of the current along z, and the current along s.
+
+    Both are relative to the current without ends, of a source at (`along`, `normal`) to the plate
+    whose direct path is `direct`.
+    """
+    half = 0.5 * c.plate_length
+    before = np.sqrt(normal * normal + half * half)  # source to edge, square to the edge
+    lobe = _lobe(c, c.z / direct)
+    at_ends: ComplexArray | float = 1.0
+    oblique: ComplexArray | float = 0.0
+    shift = c.s - along
+    for sense in (1.0, -1.0):
+        behind = half - sense * c.z
+        path = before + behind
+        over = np.sqrt(path * path + shift * shift)
+        zeta = _root(over - direct)
+        on_edge = shift * before / path
+        strength = spread(direct, over) / lobe
+        strength *= _lobe(c, half / np.sqrt(on_edge * on_edge + before * before))
+        share = strength * _extent(c, along, before, on_edge + along, over, (c.s, np.abs(behind)))
+        # The wave that runs back from this end stops again at the other one.
+        stopped = hard(_root(2.0 * (c.plate_length - behind) * path / over))
+        at_ends = at_ends - 2.0 * tail(zeta) * stopped * share
+        edge_current = shed(zeta)
+        oblique = oblique + edge_current * share * (sense * shift / path)
+    return np.asarray(at_ends), np.asarray(oblique)
+
+
+def _lobe(c: Corners, cosine: FloatArray) -> FloatArray:
+    """Return the dipole's far field at the angle of `cosine` from its axis."""
+    half = 0.5 * c.dipole_length
+    cosine = np.minimum(cosine, 1.0 - 1e-5)
+    return np.asarray((np.cos(half * cosine) - np.cos(half)) / np.sqrt(1.0 - cosine * cosine))
+
+
+def _extent(
+    c: Corners,
+    along: FloatArray,
+    source: FloatArray,
+    on_edge: FloatArray,
+    over: FloatArray,
+    point: tuple[FloatArray, FloatArray],
+) -> ComplexArray:
+    """Return the part of an endless edge's diffraction that the end from s = 0 to w has.
+
+    Source and point are given by their places along the edge, `along` and point[0], and their
+    distances from its line, `source` and point[1]; the ray bends at `on_edge`, its path is `over`.
+    """
+    px, far = point
+    share: ComplexArray | float = 1.0
+    for place, sense in ((0.0, 1.0), (c.plate_width, -1.0)):
+        corner_path = np.sqrt((along - place) ** 2 + source * source)
+        corner_path = corner_path + np.sqrt((px - place) ** 2 + far * far)
+        missing = tail(_root(corner_path - over))
+        share = share * np.where(sense * (on_edge - place) > 0.0, 1.0 - missing, missing)
+    return np.asarray(share)
+
+
+def _rim(c: Corners, sources: _Sources, m: int) -> ComplexArray:
+    """Return the current by the rim seen at m·α from our plate, lit by all images, without ends."""
+    s, z, w, spacing = c.s, c.z, c.plate_width, c.spacing
+    seen = m * c.apex_angle
+    after = np.sqrt((s - w * np.cos(seen)) ** 2 + (w * np.sin(seen)) ** 2)
+    facing = -w * np.sin(seen) / after
+    shape = np.broadcast_shapes(s.shape, z.shape)
+    total = np.zeros(shape, dtype=np.result_type(s, 1j))
+    steepness: FloatArray = np.zeros(0)
+    for j in range(int(np.ceil(np.pi / float(c.apex_angle[0, 0, 0])))):
+        n = c.count(j + 0.5)
+        if not n:
+            break
+        turned = (j + 0.5) * c.apex_angle[:n]
+        ax, an = spacing[:n] * np.cos(turned), spacing[:n] * np.sin(turned)
+        path = np.sqrt((w[:n] - ax) ** 2 + an * an) + after[:n]
+        over = np.sqrt(path * path + z[:n] * z[:n])
+        if j == 0:
+            steepness = path / over
+        for sense in (-1, 1):  # the incident, the reflected side of the rim's field
+            q = 2 * m + sense * (2 * j + 1)
+            rho, direct, field = sources(abs(q), n)
+            zeta = _root(over - direct)
+            slope = -spacing[:n] * np.sin(0.5 * q * c.apex_angle[:n]) / rho
+            bend = 0.5 * shed(zeta)
+            bend = bend * (facing[:n] * (direct * path) / (rho * over) - slope)
+            missing = tail(zeta)
+            if sense > 0:
+                # Reflected beyond the rim there is no such ray: the tail turns round.
+                height = np.maximum(s[:n] * np.sin(seen[:n]) + an, _TINY)
+                lit = ax + (s[:n] * np.cos(seen[:n]) - ax) * an / height <= w[:n]
+                missing, bend = np.where(lit, missing, 1.0 - missing), np.where(lit, bend, -bend)
+            part = field * (slope * missing + bend)
+            total[:n] += part * ((2.0 * sense * _sign(j + m + 1)) * spread(direct, over))
+    across = np.sqrt(2.0 * w * w * (1.0 - np.cos(seen)))
+    own_rim = soft(_root(steepness * (across + w - s - after)))
+    # Past the line of our plate the rim fades behind the apex.
+    hidden = tail(_root(steepness * (w + s - after)))
+    fade = np.clip(3.0 - 2.0 * seen / np.pi, 0.0, 1.0) ** 2
+    return total * own_rim * np.where(seen < np.pi, 1.0 - hidden, hidden * fade)
+
+
+def _ends(c: Corners, sources: _Sources, m: int) -> ComplexArray:
+    """Return the current by the ends of the plate seen at m·α from ours, lit by all images."""
+    s, z, spacing = c.s, c.z, c.spacing
+    seen = m * c.apex_angle
+    half = 0.5 * c.plate_length
+    px, pn = s * np.cos(seen), s * np.sin(seen)  # the point in that plate's frame
+    sine, cosine = np.sin(seen), np.cos(seen)
+    shape = np.broadcast_shapes(s.shape, z.shape)
+    total = np.zeros(shape, dtype=np.result_type(s, 1j))
+    for j in range(int(np.ceil(np.pi / float(c.apex_angle[0, 0, 0])))):
+        n = c.count(j + 0.5)
+        if not n:
+            break
+        b = c.first(n)
+        turned = (j + 0.5) * b.apex_angle
+        ax, an = spacing[:n] * np.cos(turned), spacing[:n] * np.sin(turned)
+        dx = px[:n] - ax
+        before = np.sqrt(an * an + half[:n] * half[:n])
+        lit = []
+        for sense in (1, -1):  # incident and reflected side: image above and below that plate
+            _, direct, field = sources(abs(2 * m - sense * (2 * j + 1)), n)
+            lit.append((sense, direct, field / _lobe(b, b.z / direct)))
+        for end in (half[:n], -half[:n]):
+            beyond = b.z - end
+            after = np.sqrt(pn[:n] * pn[:n] + beyond * beyond)
+            path = before + after
+            over = np.sqrt(path * path + dx * dx)
+            on_edge = dx * before / path
+            rho_edge = np.sqrt(on_edge * on_edge + an * an)
+            to_edge = np.sqrt(rho_edge * rho_edge + half[:n] * half[:n])
+            # H and E/η along that edge of the diffracted wave; then H square to that plate.
+            h_edge: ComplexArray | float = 0.0
+            e_edge: ComplexArray | float = 0.0
+            for sense, direct, field in lit:
+                wave = field * tail(_root(over - direct)) * spread(direct, over)
+                h_edge, e_edge = h_edge - wave, e_edge - sense * wave
+            h_along = h_edge * (an / rho_edge)
+            h_square = h_along * (dx / path * pn[:n] / after)
+            h_square = h_square + e_edge * (
+                end * on_edge / (to_edge * rho_edge) * (over / path) * (beyond / after)
+            )
+            part = cosine[:n] * h_along - sine[:n] * h_square
+            stopped = hard(_root(path / over * (np.abs(pn[:n]) + np.abs(beyond) - after)))
+            strength = _lobe(b, half[:n] / to_edge) * _extent(
+                b, ax, before, ax + on_edge, over, (px[:n], after)
+            )
+            total[:n] += part * strength * stopped * (2.0 * _sign(j + m + 1))
+    return total * soft(_root(2.0 * (c.plate_width - s)))
