@@ -78,7 +78,8 @@ def _result(folder: Path, gain: float = 11.5, goals: str = _DEFAULT) -> Result:
 def _series(result: Result, label: str) -> tuple[list[float], list[float]]:
     lines = front_of(result).axes[0].lines
     (line,) = [line for line in lines if str(line.get_label()).startswith(label)]
-    return [float(v) for v in line.get_xdata()], [float(v) for v in line.get_ydata()]
+    x, y = (np.asarray(data, dtype=np.float64) for data in line.get_data())
+    return x.tolist(), y.tolist()
 
 
 def test_size_across_gain_upwards_and_the_low_edge_for_the_aperture(tmp_path: Path) -> None:
