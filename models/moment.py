@@ -20,7 +20,7 @@ import numpy as np
 from models.build import Build
 from models.conventions import ETA0, ComplexArray, FloatArray, decibels, wavenumber
 from models.geometry import Reflectors
-from models.moment_field import Sky, plates_far_field
+from models.moment_field import Sky, View, plates_far_field
 from models.moment_kernel import near_reach
 from models.moment_plates import Grid, grid_cells
 from models.moment_wire import Wire, driven_shapes, sinusoidal_shape
@@ -43,11 +43,11 @@ ENOUGH_DB: Final = 0.05
 VOUCHED_DB: Final = 0.3
 """Doubt above which, after the finest grids, the model does not vouch for its answer."""
 
-MODES: Final = 6
+MODES: Final = 5
 """Currents on half the dipole."""
 
-BATCH_NUMBERS: Final = 4_000_000
-"""Complex numbers in the matrices of one batch: bounds the memory."""
+BATCH_NUMBERS: Final = 200_000
+"""Complex numbers in the matrices of one batch: what a processor's cache holds."""
 
 _NUMBERS: Final = ("power", "resistance", "reactance", "efficiency", "doubt_db")
 
@@ -169,7 +169,10 @@ def _solve(case: Case, key: list[int], build: Build, feed: Feed) -> Pattern:
     modes = wire.impedance()
     shapes = driven_shapes(wire, modes) if feed == "solved" else sinusoidal_shape(wire)
     alone = _alone(case, wire, shapes, modes, sky)
-    grids = [_respond(case, wire, shapes, sky, (f * base_s, f * base_z), reach) for f in PROPORTION]
+    view = View.of(sky, case.apex_angle)
+    grids = [
+        _respond(case, wire, shapes, view, (f * base_s, f * base_z), reach) for f in PROPORTION
+    ]
     answer = _drive(shapes, alone, _limit(grids, (0, 2, 4)))
     rough = _drive(shapes, alone, _limit(grids[1:], (0, 2)))
     resistance = answer.impedance.real
@@ -206,7 +209,7 @@ def _respond(
     case: Case,
     wire: Wire,
     shapes: ComplexArray,
-    sky: Sky,
+    view: View,
     counts: tuple[int, int],
     reach: int,
 ) -> Response:
@@ -224,7 +227,7 @@ def _respond(
     currents = np.linalg.solve(grid.matrix(reach), scale * voltages).astype(
         np.complex128, copy=False
     )
-    theta, phi = plates_far_field(grid, currents, sky)
+    theta, phi = plates_far_field(grid, currents, view)
     return Response(
         theta=theta,
         phi=phi,

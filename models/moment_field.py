@@ -50,9 +50,9 @@ class Sky:
         count = order + 6
         cut = _middles(count)
         # Gauss-Legendre over cosθ, upper half; equal parts of φ.
-        nodes, weights = np.polynomial.legendre.leggauss(2 * (order // 2 + 2))
+        nodes, weights = np.polynomial.legendre.leggauss(order + order % 2)
         upper = nodes > 0.0
-        theta, phi = np.arccos(nodes[upper]), _middles(order + 2)
+        theta, phi = np.arccos(nodes[upper]), _middles(order)
         flat, slope = np.full(count, np.pi / 2.0), np.abs(np.pi / 2.0 - cut)
         behind = np.where(_forward(cut) < 0.0, np.pi, 0.0)
         return cls(
@@ -102,8 +102,37 @@ def _cosine_interpolation(count: int, angles: FloatArray) -> FloatArray:
     return np.asarray((np.cos(angles[:, None] * order) * weight) @ samples)
 
 
+@dataclass(frozen=True, kw_only=True, eq=False)
+class View:
+    """The sky as both plates see it, for designs of several apex angles.
+
+    Parameters
+    ----------
+    sky : Sky
+        The directions.
+    along, across : (2, n, n_dir)
+        Of each plate: cosine between its slope and the direction's φ, and the slope's part along φ.
+    """
+
+    sky: Sky
+    along: FloatArray
+    across: FloatArray
+
+    @classmethod
+    def of(cls, sky: Sky, apex_angle: FloatArray) -> View:
+        """Return the view for `apex_angle`, radians, (n,)."""
+        half = apex_angle[:, None] / 2.0
+        even = np.cos(half) * np.cos(sky.phi), np.cos(half) * np.sin(sky.phi)
+        odd = np.sin(half) * np.sin(sky.phi), np.sin(half) * np.cos(sky.phi)
+        return cls(
+            sky=sky,
+            along=np.stack([even[0] + odd[0], even[0] - odd[0]]),
+            across=np.stack([odd[1] - even[1], -odd[1] - even[1]]),
+        )
+
+
 def plates_far_field(
-    grid: Grid, currents: ComplexArray, sky: Sky
+    grid: Grid, currents: ComplexArray, view: View
 ) -> tuple[ComplexArray, ComplexArray]:
     """Return f_θ (n, n_dir, m) of both plates, and f_φ off the cuts (on them it is 0).
 
@@ -113,46 +142,44 @@ def plates_far_field(
         The grid of the currents.
     currents : (n, N, m)
         Unknowns of the grid, A.
-    sky : Sky
+    view : View
         Where to.
     """
-    cells = grid.cells
+    cells, sky = grid.cells, view.sky
     j_z, j_s = grid.split(currents)
-    plain = 2 * sky.count
     sine, cosine = np.sin(sky.theta), np.cos(sky.theta)
-    half = cells.apex_angle[:, None] / 2.0
-    sides = []
-    for side in (half, -half):
-        along, across = np.cos(sky.phi - side), np.sin(side - sky.phi)
-        at_cells, at_edges = _waves(grid, cells.k[:, None] * sine * along)
-        sides.append(
-            (
-                at_cells,
-                (cosine * along)[:, None] * at_edges,
-                across[:, None, plain:] * at_edges[..., plain:],
-            )
-        )
-    plate_z, plate_theta, plate_phi = (one + two for one, two in zip(*sides, strict=True))
+    at_cells, at_edges = _waves(grid, cells.k[:, None] * sine * view.along)
     edges, middles = (cells.k[:, None, None] * z[:, None] for z in grid.heights())
     even, odd = np.cos(edges * cosine[:, None]), np.sin(middles * cosine[:, None])
     moment_z, moment_s = (cells.k * size for size in (cells.size_z, 1j * cells.size_s))
     even *= moment_z[:, None, None] * sine[:, None]
-    f_theta = _sum(plate_z, even, j_z)
-    scale = moment_s[:, None, None]
-    f_theta -= scale * _sum(plate_theta, odd, j_s)
-    return f_theta, -scale * _sum(plate_phi, odd[:, plain:], j_s)
+    f_theta = _sum(at_cells[0] + at_cells[1], even, j_z)
+    # Nothing of J_s, which is odd in z, is seen on the H-plane.
+    tilted, off = slice(sky.count, None), slice(2 * sky.count, None)
+    toward = _both(at_edges, cosine * view.along, tilted)
+    f_theta[:, tilted] -= moment_s[:, None, None] * _sum(toward, odd[:, tilted], j_s)
+    aside = _sum(_both(at_edges, view.across, off), odd[:, off], j_s)
+    return f_theta, -moment_s[:, None, None] * aside
+
+
+def _both(waves: ComplexArray, part: FloatArray, which: slice) -> ComplexArray:
+    """Return the sum over the plates of waves (2, n, n_s, n_dir) times part (2, n, n_dir)."""
+    one, two = (waves[i, ..., which] * part[i, :, None, which] for i in (0, 1))
+    one += two
+    return np.asarray(one)
 
 
 def _waves(grid: Grid, k_along: FloatArray) -> tuple[ComplexArray, ComplexArray]:
-    """Return e^{jks·(direction along the plate)} at cells and edges, (n, n_s, n_dir) each."""
+    """Return e^{jks·(direction along the plate)} at cells and edges, (2, n, n_s, n_dir) each."""
     cells = grid.cells
     half_step = _turn(k_along * (0.5 * cells.size_s)[:, None])
     step = half_step**2
-    at_cells = np.empty((k_along.shape[0], cells.count_s, k_along.shape[1]), dtype=np.complex128)
-    np.multiply(_turn(k_along * cells.start[:, None]), half_step, out=at_cells[:, 0])
+    sides, size, directions = k_along.shape
+    at_cells = np.empty((sides, size, cells.count_s, directions), dtype=np.complex128)
+    np.multiply(_turn(k_along * cells.start[:, None]), half_step, out=at_cells[:, :, 0])
     for i in range(1, cells.count_s):
-        np.multiply(at_cells[:, i - 1], step, out=at_cells[:, i])
-    return at_cells, at_cells[:, :-1] * half_step[:, None]
+        np.multiply(at_cells[:, :, i - 1], step, out=at_cells[:, :, i])
+    return at_cells, at_cells[:, :, :-1] * half_step[:, :, None]
 
 
 def _sum(along_s: ComplexArray, along_z: FloatArray, currents: ComplexArray) -> ComplexArray:

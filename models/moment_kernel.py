@@ -21,10 +21,10 @@ from models.conventions import ComplexArray, FloatArray
 __all__ = ["Cells", "between_plates", "near_reach", "own_plate"]
 
 _GAUSS: Final = 0.5 / np.sqrt(3.0)
-_NEAR_ROWS: Final = 3
+_NEAR_ROWS: Final = 2
 """Cells along z that count as near."""
 
-_REACHES: Final = np.array([4, 6, 10, 20, 40])
+_REACHES: Final = np.array([3, 5, 8, 16, 32])
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)
@@ -60,7 +60,7 @@ class Cells:
 
 def near_reach(apex_angle: FloatArray) -> FloatArray:
     """Return up to which i + i' cells of the two plates are near, in a few classes, (n,)."""
-    need = 2.5 / np.sin(apex_angle / 2.0)
+    need = 2.0 / np.sin(apex_angle / 2.0)
     return np.asarray(_REACHES[np.minimum(np.searchsorted(_REACHES, need), _REACHES.size - 1)])
 
 

@@ -54,12 +54,12 @@ def test_between_plates(place: tuple[int, int, int], degrees: float) -> None:
     dz = row * grid.size_z[0]
     s = grid.centres()[0]
     expected = (mean(grid, s[i], s[j], dz, angle) + mean(grid, s[j], s[i], dz, angle)) / 2.0
-    assert at_centres[0][place] == pytest.approx(expected, rel=3e-3)
+    assert at_centres[0][place] == pytest.approx(expected, rel=1e-2)
     assert at_centres[0, j, i, row] == at_centres[0, i, j, row]
     s = grid.edges()[0]
     i, j = min(i, 3), min(j, 3)
     expected = (mean(grid, s[i], s[j], dz, angle) + mean(grid, s[j], s[i], dz, angle)) / 2.0
-    assert at_edges[0, i, j, row] == pytest.approx(expected, rel=3e-3)
+    assert at_edges[0, i, j, row] == pytest.approx(expected, rel=1e-2)
 
 
 def test_a_cell_on_itself() -> None:
