@@ -59,7 +59,7 @@ def strip_currents(
     return np.asarray(np.exp(1j * TAU * spacing * np.cos(phi)) + plane @ (current * size))
 
 
-# Two-dimensional mode matching with plain truncation, done apart from this code (40 outer orders).
+# Two-dimensional mode matching with plain truncation and many orders, done apart from this code.
 @pytest.mark.parametrize(
     ("alpha_deg", "spacing", "width", "levels", "directivity"),
     [
@@ -155,11 +155,14 @@ def corner(spacing: float, width: float, alpha_deg: float = 90.0) -> Reflectors:
 
 
 def test_half_wave_dipole() -> None:
-    """Plain mode matching (40 outer orders) over a sphere, done apart: 10.783 dBi, 125.98 Ω."""
+    """Plain mode matching and a sphere integral, done apart: 10.783 dBi, 125.89 Ω at 80 orders.
+
+    It converges slowly from above in the resistance: 125.98 at 20 orders, 125.91 at 40.
+    """
     result = MODELS["modal"].radiate(corner(0.5, 1.0), np.array([C0]), Build())
     directivity = 10.0 * np.log10(np.abs(result.h_field[0, 0, 0]) ** 2 / result.power[0, 0])
-    assert directivity == pytest.approx(10.783, abs=0.005)
-    assert result.resistance[0, 0] == pytest.approx(125.98, abs=0.15)
+    assert directivity == pytest.approx(10.783, abs=0.003)
+    assert result.resistance[0, 0] == pytest.approx(125.89, abs=0.02)
 
 
 def test_directivity_is_field_over_the_whole_sphere() -> None:
