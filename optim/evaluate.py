@@ -24,7 +24,7 @@ from optim.requirements import Requirements
 
 __all__ = ["CHUNK", "Evaluator"]
 
-CHUNK: Final = 10
+CHUNK: Final = 25
 """Designs a worker takes at a time."""
 
 

@@ -6,7 +6,6 @@ are left out only when quiet.
 
 from __future__ import annotations
 
-import sys
 from collections.abc import Callable, Iterator
 from contextlib import contextmanager
 from types import TracebackType
@@ -31,10 +30,12 @@ class Progress:
     ----------
     quiet : bool
         Write nothing at all.
+    console : Console, optional
+        Where to write; stderr if left out.
     """
 
-    def __init__(self, *, quiet: bool = False) -> None:
-        self._console = Console(file=sys.stderr, quiet=quiet, highlight=False)
+    def __init__(self, *, quiet: bool = False, console: Console | None = None) -> None:
+        self._console = console or Console(stderr=True, quiet=quiet, highlight=False)
         self._bars = Bars(
             TextColumn("{task.description}"),
             BarColumn(bar_width=20),
@@ -70,7 +71,7 @@ class Progress:
 
         def told(referee: Referee) -> None:
             if not self._bars.disable:
-                self._bars.update(task, advance=1, found=found(referee))
+                self._bars.update(task, advance=1, found=found(referee), refresh=True)
 
         yield told
         self._bars.remove_task(task)

@@ -44,7 +44,7 @@ class Referee:
         self.space = space
         self.model = evaluator.model
         self.labels = [limit.label for limit in rules.limits]
-        self._rules = rules
+        self.rules = rules
         self.archive = Archive(Judged.none(space.low.size, self.sizes))
         self._evaluator = evaluator
         self._frequencies = frequencies
@@ -53,7 +53,7 @@ class Referee:
     @property
     def sizes(self) -> tuple[int, int, int, int]:
         """Numbers of objectives, margins, violations and figures of a judged design."""
-        rules = self._rules
+        rules = self.rules
         return (
             len(rules.requirements.goals),
             len(rules.limits),
@@ -74,7 +74,7 @@ class Referee:
         recorded = self._journal.replay(self.stage, designs)
         if recorded is not None:
             return Judged.from_numbers(designs, recorded, self.sizes)
-        reflectors, rules = self.space.reflectors(designs), self._rules
+        reflectors, rules = self.space.reflectors(designs), self.rules
         figures = self._evaluator.figures(reflectors, self._frequencies)
         judged = Judged(
             designs=designs,

@@ -1,8 +1,15 @@
 """Small requirements files on the image model, which answers in microseconds, for search tests."""
 
+from collections.abc import Iterator
+from contextlib import contextmanager
 from pathlib import Path
 
+from optim.evaluate import Evaluator
+from optim.journal import Header, Journal
+from optim.margins import Judge
+from optim.referee import Referee, columns
 from optim.requirements import Requirements, read_requirements
+from optim.space import DesignSpace
 
 EASY = """
 title = "Easy"
@@ -73,3 +80,27 @@ def write(folder: Path, text: str = EASY) -> Path:
 def read(folder: Path, text: str = EASY) -> Requirements:
     """Return a requirements file, understood."""
     return read_requirements(write(folder, text))
+
+
+@contextmanager
+def judging(folder: Path) -> Iterator[Referee]:
+    """Give a referee for the easy requirements, with its journal in `folder`."""
+    requirements = read(folder)
+    rules = Judge(requirements)
+    header = Header(
+        seed=1,
+        spec_sha256="",
+        scout="image",
+        prove="none",
+        versions={},
+        columns={"scout": columns(rules)},
+    )
+    with Journal(folder / "journal.jsonl", header, resume=True) as journal:
+        yield Referee(
+            "scout",
+            DesignSpace.from_requirements(requirements),
+            rules,
+            Evaluator(requirements, "image"),
+            requirements.band.frequencies(),
+            journal,
+        )

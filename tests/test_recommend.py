@@ -53,10 +53,11 @@ def test_smallest_is_by_frontal_area_where_nothing_is_minimised() -> None:
 
 def test_front_is_feasible_unbeaten_and_not_too_long() -> None:
     angle = np.linspace(0.0, np.pi / 2, 500)
-    curve = [[1 - np.sin(a), 1 - np.cos(a)] for a in angle]
+    curve = np.column_stack([1.0 - np.sin(angle), 1.0 - np.cos(angle)]).tolist()
     others = [[1.0, 0.0, 0.0], [-1.0, -1.0, -1.0]]
-    conditions = [*([[-1.0, -1.0, -1.0]] * 500), *others]
-    rows = front_rows(judged([*curve, [-1.0, -1.0], [5.0, 5.0]], conditions))
+    conditions: list[list[float]] = [*([[-1.0, -1.0, -1.0]] * 500), *others]
+    objectives: list[list[float]] = [*curve, [-1.0, -1.0], [5.0, 5.0]]
+    rows = front_rows(judged(objectives, conditions))
     assert len(rows) == MOST_ROWS
     assert rows.max() < 500
     assert {0, 499} <= set(rows.tolist())
