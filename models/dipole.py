@@ -1,7 +1,7 @@
 """The dipole with a sinusoidal current: far field, near field, self and mutual impedance.
 
-Along z, centre at the origin, current I·sin(k(h−|z|)) with half-length h; quantities are referred to
-the current maximum I. Impedances in Ω, fields in V/m, lengths in m. Valid for thin wires near
+Along z, centre at the origin, current I·sin(k(h−|z|)) with half-length h; quantities are referred
+to the current maximum I. Impedances in Ω, fields in V/m, lengths in m. Valid for thin wires near
 resonance; the current of a solved dipole is `models.moment`'s business.
 
 Source: Balanis, *Antenna Theory*, 4th ed., §4.5 and §8.5-8.6 (induced EMF); Carter 1932.

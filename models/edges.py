@@ -45,7 +45,7 @@ off by straight lines, to 2e-5; beyond it keeps the last value, below 0.01."""
 
 
 def transition(x: ArrayLike) -> ComplexArray:
-    """Return F(x) = 2j√x·e^{jx} ∫_√x^∞ e^{−jt²} dt of the uniform theory, x >= 0, double precision."""
+    """Return F(x) = 2j√x·e^{jx} ∫_√x^∞ e^{−jt²} dt of the uniform theory, x >= 0."""
     root = np.sqrt(np.asarray(x, dtype=np.float64))
     return np.asarray(np.sqrt(np.pi) * np.exp(0.25j * np.pi) * root * _still_tail(root) * 2.0)
 
@@ -80,6 +80,15 @@ def tail(zeta: SingleArray) -> WaveArray:
     out = np.take(_RISES, index, mode="clip")
     out *= place - index.astype(np.float32)
     out += np.take(_VALUES, index, mode="clip")
+    return out
+
+
+def seen_part(zeta: SingleArray, inside: SingleArray) -> WaveArray:
+    """Return the part of a wave seen past an edge: 1 − Q(ζ) where `inside` >= 0, Q(ζ) beyond."""
+    out = tail(zeta)
+    out -= 0.5
+    out *= np.copysign(np.float32(1.0), -inside)
+    out += 0.5
     return out
 
 

@@ -83,9 +83,9 @@ class Figures:
 
 def vswr(resistance: FloatArray, reactance: FloatArray, reference_ohm: float) -> FloatArray:
     """Return the voltage standing wave ratio of an impedance (Ω) on a line of `reference_ohm`."""
-    size = reflection(resistance, reactance, reference_ohm)
+    size = np.minimum(reflection(resistance, reactance, reference_ohm), 1.0)
     with np.errstate(divide="ignore"):
-        return np.asarray(np.where(size < 1.0, (1.0 + size) / (1.0 - size), np.inf))
+        return np.asarray((1.0 + size) / (1.0 - size))
 
 
 def reflection(resistance: FloatArray, reactance: FloatArray, reference_ohm: float) -> FloatArray:

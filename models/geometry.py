@@ -1,4 +1,4 @@
-"""The designs: a struct of arrays, one row a corner reflector; lengths in metres, angles in radians.
+"""The designs: a struct of arrays, one row a corner reflector; metres and radians.
 
 Spacing is feed to apex line; plate width runs along the slope from the apex line outwards; plate
 length runs along the apex line, parallel to the dipole. Size is that of the smallest box, faces
@@ -8,9 +8,10 @@ square to boresight, around plates and dipole.
 from __future__ import annotations
 
 from dataclasses import dataclass, fields
+from typing import Any
 
 import numpy as np
-from numpy.typing import ArrayLike
+from numpy.typing import ArrayLike, NDArray
 
 from models.conventions import FloatArray
 
@@ -106,7 +107,7 @@ class Reflectors:
         """Return the number of designs."""
         return int(self.apex_angle.size)
 
-    def __getitem__(self, rows: slice | FloatArray | list[int] | int) -> Reflectors:
+    def __getitem__(self, rows: slice | NDArray[Any] | list[int] | int) -> Reflectors:
         """Return the designs at `rows` (a slice, a mask, indices, or one index)."""
         return Reflectors.from_matrix(np.atleast_2d(self.matrix()[rows]))
 
@@ -122,7 +123,7 @@ class Reflectors:
 
     @property
     def depth(self) -> FloatArray:
-        """Box along boresight, from the apex line to the rims or the front of the dipole, m, (n,)."""
+        """Box along boresight, from apex line to rims or to the front of the dipole, m, (n,)."""
         rim = self.plate_width * np.cos(self.apex_angle / 2.0)
         return np.maximum(rim, self.spacing + self.dipole_diameter / 2.0)
 

@@ -29,7 +29,7 @@ def image_count(apex_angle: FloatArray) -> FloatArray:
 
 
 def image_field(n: int, k_spacing: FloatArray, phi: FloatArray) -> ComplexArray:
-    """Return the sum over feed and images, relative to the feed alone, in direction φ (broadcast)."""
+    """Return the sum over feed and images, relative to the feed alone, towards φ (broadcast)."""
     alpha = np.pi / n
     total = np.zeros(np.broadcast_shapes(k_spacing.shape, phi.shape), dtype=np.complex128)
     for m in range(2 * n):

@@ -15,9 +15,9 @@ import numpy as np
 from scipy.special import roots_jacobi
 
 from models.build import Build
-from models.conventions import ETA0, ComplexArray, FloatArray, wavenumber
+from models.conventions import ETA0, ComplexArray, FloatArray, decibels, wavenumber
 from models.dipole import far_field, mutual_impedance, near_field, terminal
-from models.edges import turn
+from models.edges import SingleArray, WaveArray, turn
 from models.geometry import Reflectors
 from models.pattern import CUT_ANGLES, Pattern
 from models.ray_currents import Corners, currents
@@ -48,7 +48,7 @@ def radiate(reflectors: Reflectors, frequencies_hz: FloatArray, build: Build) ->
     )
     shape, angles = (len(reflectors), k.size), CUT_ANGLES
     fields = np.empty((2, pairs.shape[0], angles.size), dtype=np.complex128)
-    numbers = np.empty((4, pairs.shape[0]))
+    numbers = np.empty((5, pairs.shape[0]))
     counts = _node_counts(pairs)
     order = np.lexsort((pairs[:, 0], counts[:, 1], counts[:, 0]))
     start = 0
@@ -59,7 +59,7 @@ def radiate(reflectors: Reflectors, frequencies_hz: FloatArray, build: Build) ->
         rows = order[start : start + min(length, max(1, _BLOCK // int(n_s * n_z)))]
         fields[:, rows], numbers[:, rows] = _solve(pairs[rows], skin.reshape(-1)[rows], n_s, n_z)
         start += rows.size
-    power, resistance, reactance, efficiency = numbers.reshape(4, *shape)
+    power, resistance, reactance, efficiency, doubt = numbers.reshape(5, *shape)
     return Pattern(
         angles=angles,
         h_field=fields[0].reshape(*shape, -1),
@@ -68,7 +68,7 @@ def radiate(reflectors: Reflectors, frequencies_hz: FloatArray, build: Build) ->
         resistance=resistance,
         reactance=reactance,
         efficiency=efficiency,
-        doubt_db=np.full(shape, np.nan),
+        doubt_db=doubt,
     )
 
 
@@ -82,7 +82,7 @@ def _node_counts(pairs: FloatArray) -> np.ndarray:
 
 
 def _nodes(size: FloatArray, count: int) -> tuple[FloatArray, FloatArray]:
-    """Return places in (0, size) and weights for integrands with a plate edge at `size`, (n, count)."""
+    """Return places in (0, size) and weights, (n, count), for what has a plate edge at `size`."""
     x, weights = roots_jacobi(count, -0.5, 0.0)
     weights = weights * np.sqrt(1.0 - x) / 2.0
     return size[:, None] * (1.0 + x) / 2.0, size[:, None] * weights
@@ -91,7 +91,7 @@ def _nodes(size: FloatArray, count: int) -> tuple[FloatArray, FloatArray]:
 def _solve(
     pairs: FloatArray, skin: FloatArray, n_s: int, n_z: int
 ) -> tuple[ComplexArray, FloatArray]:
-    """Return both cuts (2, n, n_angle) and power, resistance, reactance, efficiency (4, n)."""
+    """Return both cuts (2, n, n_angle) and power, R, X, efficiency and doubt (5, n)."""
     alpha, spacing, width, length, dipole, diameter = pairs.T
     s, weight_s = _nodes(width, n_s)
     z, weight_z = _nodes(length / 2.0, n_z)
@@ -106,32 +106,36 @@ def _solve(
     )
     along_z, along_s = currents(corners)
     weight = (weight_s[:, :, None] * weight_z[:, None, :]).astype(np.float32)
-    h_field, e_field = _cuts(corners, along_z * weight, along_s * weight)
+    moment_z, moment_s = along_z * weight, along_s * weight
+    h_field, e_field = _cuts(corners, moment_z, moment_s)
+    power = _sphere_mean(corners, moment_z, moment_s)
     # Reaction on the dipole: both plates, both halves; the dipole's field is that for 1 A.
     distance = np.sqrt(
         (s - (spacing * np.cos(alpha / 2.0))[:, None]) ** 2
         + ((spacing * np.sin(alpha / 2.0))[:, None]) ** 2
     )
     field = near_field(1.0, dipole[:, None, None], distance[:, :, None], z[:, None, :])
-    added = -4.0 * (field * along_z * weight).sum(axis=(1, 2))
-    own = mutual_impedance(1.0, dipole, diameter / 2.0)
-    radiated = own.real + added.real
+    reaction = mutual_impedance(1.0, dipole, diameter / 2.0)
+    reaction -= 4.0 * (field * moment_z).sum(axis=(1, 2))
+    radiated = ETA0 / np.pi * power
     density = along_z.real**2 + along_z.imag**2 + along_s.real**2 + along_s.imag**2
     plates = 4.0 * (density * weight).sum(axis=(1, 2), dtype=np.float64)
     rod = (dipole - np.sin(dipole)) / 2.0 / (np.pi * diameter)  # ∫ sin²(h − |z|) dz over 2πa
     lost = skin * (plates + rod)
-    gap = terminal(own + added + lost, 1.0, dipole)
+    gap = terminal(radiated + lost + 1j * reaction.imag, 1.0, dipole)
+    # Power in by reaction against power out over the sphere: the model's own measure of its error.
+    doubt = np.abs(decibels(np.maximum(reaction.real, 1e-3) / radiated))
     return np.stack([h_field, e_field]), np.stack(
-        [np.pi / ETA0 * radiated, gap.real, gap.imag, radiated / (radiated + lost)]
+        [power, gap.real, gap.imag, radiated / (radiated + lost), doubt]
     )
 
 
-def _single(column: FloatArray) -> FloatArray:
-    return np.asarray(column, dtype=np.float32)[:, None, None]  # type: ignore[return-value]
+def _single(column: FloatArray) -> SingleArray:
+    return np.asarray(column, dtype=np.float32)[:, None, None]
 
 
 def _cuts(
-    c: Corners, moment_z: ComplexArray, moment_s: ComplexArray
+    c: Corners, moment_z: WaveArray, moment_s: WaveArray
 ) -> tuple[ComplexArray, ComplexArray]:
     """Return f on the H- and the E-plane cut, (n, n_angle) each, of weighed currents.
 
@@ -152,15 +156,59 @@ def _cuts(
     mirror = np.concatenate([np.arange(half_count), np.arange(half_count - 2, -1, -1)])
     even = (_both(tilt, moment_z) * np.cos(height)[:, mirror]).sum(axis=-1)
     odd = (_both(tilt, moment_s) * np.sin(height)[:, mirror]).sum(axis=-1)
-    sine, cosine = np.abs(np.cos(CUT_ANGLES)), np.sin(CUT_ANGLES)
-    toward_rear = np.where(CUT_ANGLES <= np.pi / 2.0, 1.0, -1.0)
-    e_plates = 2.0 * sine * even - 2j * (cosine * toward_rear) * np.cos(half[:, :, 0]) * odd
+    cosine_x, cosine = np.cos(CUT_ANGLES), np.sin(CUT_ANGLES)
+    sine = np.abs(cosine_x)
+    facing = np.where(cosine_x >= 0.0, 1.0, -1.0)
+    e_plates = 2.0 * sine * even - 2j * (cosine * facing) * np.cos(half[:, :, 0]) * odd
     e_field = far_field(1.0, length, sine, cosine) * ahead + e_plates
-    return h_field, e_field
+    return np.asarray(h_field, dtype=np.complex128), np.asarray(e_field, dtype=np.complex128)
 
 
-def _both(phases: ComplexArray, moments: ComplexArray) -> ComplexArray:
+def _turned(phases: WaveArray, moments: WaveArray) -> WaveArray:
+    """Return phases @ moments and phases* @ moments, stacked; the second serves π − ψ."""
+    both = phases @ np.concatenate([moments, moments.conj()], axis=2)
+    count = moments.shape[2]
+    return np.stack([both[..., :count], both[..., count:].conj()])
+
+
+def _both(phases: WaveArray, moments: WaveArray) -> WaveArray:
     """Return phases @ moments on all angles, the phases of those past 90° by conjugation."""
-    front = phases @ moments
-    back = phases.conj() @ moments
+    front, back = _turned(phases, moments)
     return np.concatenate([front, back[:, -2::-1]], axis=1)
+
+
+def _sphere_mean(c: Corners, moment_z: WaveArray, moment_s: WaveArray) -> FloatArray:
+    """Return the mean of |f|² over the sphere, both polarisations, (n,).
+
+    Gauss-Legendre in cosθ over one hemisphere, equal steps in φ over half a turn; φ past 90° by
+    conjugation.
+    """
+    _, count_s, count_z = moment_z.shape
+    nodes, weights = np.polynomial.legendre.leggauss(count_z)
+    steps = count_s // 2
+    phi = ((np.arange(steps) + 0.5) * (np.pi / 2.0 / steps)).astype(np.float32)[:, None]
+    s = c.s.swapaxes(1, 2)
+    bends = [phi - 0.5 * c.apex_angle, phi + 0.5 * c.apex_angle]
+    facing = np.array([1.0, -1.0], dtype=np.float32)[:, None, None]
+    total = np.zeros(moment_z.shape[0])
+    for node, weight in zip(nodes.tolist(), weights.tolist(), strict=True):
+        cosine = (node + 1.0) / 2.0
+        sine = float(np.sqrt(1.0 - cosine * cosine))
+        height = c.z * cosine
+        sums = np.stack(
+            [
+                (moment_z * np.cos(height)).sum(axis=2) * sine,
+                (moment_s * np.sin(height)).sum(axis=2) * 1j,
+            ],
+            axis=2,
+        )
+        dipole = far_field(1.0, c.dipole_length, sine, cosine).astype(np.float32)
+        ahead = (dipole * turn(-c.spacing * sine * np.cos(phi)))[..., 0]
+        theta, cross = np.stack([ahead, ahead.conj()]), np.zeros(1, dtype=np.complex64)
+        for bend in bends:
+            plate = _turned(turn(-s * (sine * np.cos(bend))), sums)
+            theta = theta + plate[..., 0] - facing * cosine * np.cos(bend)[..., 0] * plate[..., 1]
+            cross = cross + np.sin(bend)[..., 0] * plate[..., 1]
+        power = theta.real**2 + theta.imag**2 + cross.real**2 + cross.imag**2
+        total += weight / (4.0 * steps) * power.sum(axis=(0, 2), dtype=np.float64)
+    return total

@@ -1,4 +1,4 @@
-"""Currents on both plates by rays: images, apex, rims and plate ends. Lengths times k, A·k/m for 1 A.
+"""Currents on both plates by rays: images, apex, rims, plate ends. Lengths times k, for 1 A.
 
 The corner is unfolded. A plate is lit by the dipole and by its images behind the other plate, at
 (2j + 1)·α/2 from the plate's face; each gives the current of geometrical optics, −2·H·n/ρ, times
@@ -8,12 +8,12 @@ what its edges do to it (`models.edges`, detour of the ray from the dipole's cen
   reflections, adds as if from that rim.
 - the ends z = ±L/2 lie along H: `hard`, one end's wave stopped again by the other end. The current
   along s that an oblique ray leaves at the end belongs to it. What the other plate's ends diffract,
-  H and E along that end, adds likewise. Ends are of finite extent: Fresnel's tail about the corners.
+  H and E along that end, adds likewise. Ends have two corners: Fresnel's tail about them, too.
 - the apex diffracts what images leave out when α is not 180°/n: exact for endless plates, the
   integral of Oberhettinger and of Biot & Tolstoy integrated by parts.
 
-Valid from w, L of about 0.6 λ; finite and continuous in all dimensions. Every term holds the dipole's
-exact near field, so nothing is asymptotic but the detours.
+Valid from w, L of about 0.6 λ; finite and continuous in all dimensions. Every term holds the
+dipole's exact near field, so nothing is asymptotic but the detours.
 
 Source: Kouyoumjian & Pathak, Proc. IEEE 62 (1974); Sommerfeld 1896; Macdonald 1915; Biot & Tolstoy,
 J. Acoust. Soc. Am. 29 (1957).
@@ -26,8 +26,7 @@ from typing import Final
 
 import numpy as np
 
-from models.conventions import ComplexArray, FloatArray
-from models.edges import hard, shed, soft, spread, tail, turn
+from models.edges import SingleArray, WaveArray, hard, seen_part, shed, soft, spread, tail, turn
 
 __all__ = ["Corners", "currents"]
 
@@ -48,13 +47,13 @@ class Corners:
         Distance from the apex line, and height over the middle, z >= 0.
     """
 
-    apex_angle: FloatArray
-    spacing: FloatArray
-    plate_width: FloatArray
-    plate_length: FloatArray
-    dipole_length: FloatArray
-    s: FloatArray
-    z: FloatArray
+    apex_angle: SingleArray
+    spacing: SingleArray
+    plate_width: SingleArray
+    plate_length: SingleArray
+    dipole_length: SingleArray
+    s: SingleArray
+    z: SingleArray
 
     def first(self, count: int) -> Corners:
         """Return the first `count` corners, views of the same memory."""
@@ -70,9 +69,9 @@ class _Sources:
 
     def __init__(self, corners: Corners) -> None:
         self._corners = corners
-        self._known: dict[int, tuple[FloatArray, FloatArray, ComplexArray]] = {}
+        self._known: dict[int, tuple[SingleArray, SingleArray, WaveArray]] = {}
 
-    def __call__(self, q: int, count: int) -> tuple[FloatArray, FloatArray, ComplexArray]:
+    def __call__(self, q: int, count: int) -> tuple[SingleArray, SingleArray, WaveArray]:
         """Return ρ, direct path and H_φ (exact, 1 A) of source q for the first `count` corners."""
         known = self._known.get(q)
         if known is None or known[0].shape[0] < count:
@@ -86,7 +85,7 @@ class _Sources:
         return rho[:count], direct[:count], field[:count]
 
 
-def magnetic_field(rho: FloatArray, z: FloatArray, length: FloatArray) -> ComplexArray:
+def magnetic_field(rho: SingleArray, z: SingleArray, length: SingleArray) -> WaveArray:
     """Return H_φ of the dipole for 1 A, exact, at transverse distance `rho` and height `z`."""
     half = 0.5 * length
     rho2 = rho * rho
@@ -98,12 +97,12 @@ def magnetic_field(rho: FloatArray, z: FloatArray, length: FloatArray) -> Comple
     return total
 
 
-def currents(corners: Corners) -> tuple[ComplexArray, ComplexArray]:
+def currents(corners: Corners) -> tuple[WaveArray, WaveArray]:
     """Return the current densities along z and along s at the points, (n, n_s, n_z)."""
     sources = _Sources(corners)
     along_z, along_s, at_ends = _apex(corners)
     orders = int(np.ceil(np.pi / float(corners.apex_angle[0, 0, 0])))
-    ends_of_first: ComplexArray = at_ends
+    ends_of_first: WaveArray = at_ends
     for j in range(orders):
         n = corners.count(j + 0.5)
         if n:
@@ -122,7 +121,7 @@ def currents(corners: Corners) -> tuple[ComplexArray, ComplexArray]:
     return along_z, along_s
 
 
-def _root(square: FloatArray) -> FloatArray:
+def _root(square: SingleArray) -> SingleArray:
     return np.asarray(np.sqrt(np.maximum(square, _TINY)))
 
 
@@ -130,10 +129,8 @@ def _sign(order: int) -> float:
     return -1.0 if order % 2 else 1.0
 
 
-def _image(
-    c: Corners, sources: _Sources, j: int
-) -> tuple[ComplexArray, ComplexArray, ComplexArray]:
-    """Return the current of image j with its own plate's rim and ends, and the factor of the ends."""
+def _image(c: Corners, sources: _Sources, j: int) -> tuple[WaveArray, WaveArray, WaveArray]:
+    """Return the current of image j with rim and ends of our plate, and the factor of the ends."""
     w, turned = c.plate_width, (j + 0.5) * c.apex_angle
     along, normal = c.spacing * np.cos(turned), c.spacing * np.sin(turned)
     rho, direct, field = sources(2 * j + 1, c.s.shape[0])
@@ -144,7 +141,7 @@ def _image(
     return optics * at_rim * at_ends, optics * oblique * hard(_root(2.0 * (w - c.s))), at_ends
 
 
-def _apex(c: Corners) -> tuple[ComplexArray, ComplexArray, ComplexArray]:
+def _apex(c: Corners) -> tuple[WaveArray, WaveArray, WaveArray]:
     """Return the current of the wave the apex diffracts, and the factor of the ends."""
     s, z, w, spacing = c.s, c.z, c.plate_width, c.spacing
     p = np.pi / c.apex_angle
@@ -167,8 +164,8 @@ def _apex(c: Corners) -> tuple[ComplexArray, ComplexArray, ComplexArray]:
 
 
 def _own_ends(
-    c: Corners, direct: FloatArray, along: FloatArray, normal: FloatArray
-) -> tuple[ComplexArray, ComplexArray]:
+    c: Corners, direct: SingleArray, along: SingleArray, normal: SingleArray
+) -> tuple[WaveArray, WaveArray]:
     """Return what the plate's own ends make of the current along z, and the current along s.
 
     Both are relative to the current without ends, of a source at (`along`, `normal`) to the plate
@@ -177,8 +174,8 @@ def _own_ends(
     half = 0.5 * c.plate_length
     before = np.sqrt(normal * normal + half * half)  # source to edge, square to the edge
     lobe = _lobe(c, c.z / direct)
-    at_ends: ComplexArray | float = 1.0
-    oblique: ComplexArray | float = 0.0
+    at_ends: WaveArray = np.ones(direct.shape, dtype=np.complex64)
+    oblique: WaveArray = np.zeros(direct.shape, dtype=np.complex64)
     shift = c.s - along
     for sense in (1.0, -1.0):
         behind = half - sense * c.z
@@ -191,13 +188,13 @@ def _own_ends(
         share = strength * _extent(c, along, before, on_edge + along, over, (c.s, np.abs(behind)))
         # The wave that runs back from this end stops again at the other one.
         stopped = hard(_root(2.0 * (c.plate_length - behind) * path / over))
-        at_ends = at_ends - 2.0 * tail(zeta) * stopped * share
+        at_ends -= 2.0 * tail(zeta) * stopped * share
         edge_current = shed(zeta)
         oblique = oblique + edge_current * share * (sense * shift / path)
-    return np.asarray(at_ends), np.asarray(oblique)
+    return at_ends, oblique
 
 
-def _lobe(c: Corners, cosine: FloatArray) -> FloatArray:
+def _lobe(c: Corners, cosine: SingleArray) -> SingleArray:
     """Return the dipole's far field at the angle of `cosine` from its axis."""
     half = 0.5 * c.dipole_length
     cosine = np.minimum(cosine, 1.0 - 1e-5)
@@ -206,28 +203,27 @@ def _lobe(c: Corners, cosine: FloatArray) -> FloatArray:
 
 def _extent(
     c: Corners,
-    along: FloatArray,
-    source: FloatArray,
-    on_edge: FloatArray,
-    over: FloatArray,
-    point: tuple[FloatArray, FloatArray],
-) -> ComplexArray:
+    along: SingleArray,
+    source: SingleArray,
+    on_edge: SingleArray,
+    over: SingleArray,
+    point: tuple[SingleArray, SingleArray],
+) -> WaveArray:
     """Return the part of an endless edge's diffraction that the end from s = 0 to w has.
 
     Source and point are given by their places along the edge, `along` and point[0], and their
     distances from its line, `source` and point[1]; the ray bends at `on_edge`, its path is `over`.
     """
     px, far = point
-    share: ComplexArray | float = 1.0
+    share: WaveArray | float = 1.0
     for place, sense in ((0.0, 1.0), (c.plate_width, -1.0)):
         corner_path = np.sqrt((along - place) ** 2 + source * source)
         corner_path = corner_path + np.sqrt((px - place) ** 2 + far * far)
-        missing = tail(_root(corner_path - over))
-        share = share * np.where(sense * (on_edge - place) > 0.0, 1.0 - missing, missing)
+        share = share * seen_part(_root(corner_path - over), sense * (on_edge - place))
     return np.asarray(share)
 
 
-def _rim(c: Corners, sources: _Sources, m: int) -> ComplexArray:
+def _rim(c: Corners, sources: _Sources, m: int) -> WaveArray:
     """Return the current by the rim seen at m·α from our plate, lit by all images, without ends."""
     s, z, w, spacing = c.s, c.z, c.plate_width, c.spacing
     seen = m * c.apex_angle
@@ -235,7 +231,7 @@ def _rim(c: Corners, sources: _Sources, m: int) -> ComplexArray:
     facing = -w * np.sin(seen) / after
     shape = np.broadcast_shapes(s.shape, z.shape)
     total = np.zeros(shape, dtype=np.result_type(s, 1j))
-    steepness: FloatArray = np.zeros(0)
+    steepness: SingleArray = np.zeros(0, dtype=np.float32)
     for j in range(int(np.ceil(np.pi / float(c.apex_angle[0, 0, 0])))):
         n = c.count(j + 0.5)
         if not n:
@@ -256,20 +252,21 @@ def _rim(c: Corners, sources: _Sources, m: int) -> ComplexArray:
             missing = tail(zeta)
             if sense > 0:
                 # Reflected beyond the rim there is no such ray: the tail turns round.
-                height = np.maximum(s[:n] * np.sin(seen[:n]) + an, _TINY)
-                lit = ax + (s[:n] * np.cos(seen[:n]) - ax) * an / height <= w[:n]
-                missing, bend = np.where(lit, missing, 1.0 - missing), np.where(lit, bend, -bend)
+                height = np.maximum(s[:n] * np.sin(seen[:n]), 0.0) + an + _TINY
+                bounce = ax + (s[:n] * np.cos(seen[:n]) - ax) * an / height
+                missing = 1.0 - seen_part(zeta, w[:n] - bounce)
+                bend *= np.copysign(1.0, w[:n] - bounce)
             part = field * (slope * missing + bend)
             total[:n] += part * ((2.0 * sense * _sign(j + m + 1)) * spread(direct, over))
     across = np.sqrt(2.0 * w * w * (1.0 - np.cos(seen)))
     own_rim = soft(_root(steepness * (across + w - s - after)))
     # Past the line of our plate the rim fades behind the apex.
-    hidden = tail(_root(steepness * (w + s - after)))
     fade = np.clip(3.0 - 2.0 * seen / np.pi, 0.0, 1.0) ** 2
-    return total * own_rim * np.where(seen < np.pi, 1.0 - hidden, hidden * fade)
+    view = seen_part(_root(steepness * (w + s - after)), np.pi - seen)
+    return np.asarray(total * own_rim * (view * fade))
 
 
-def _ends(c: Corners, sources: _Sources, m: int) -> ComplexArray:
+def _ends(c: Corners, sources: _Sources, m: int) -> WaveArray:
     """Return the current by the ends of the plate seen at m·α from ours, lit by all images."""
     s, z, spacing = c.s, c.z, c.spacing
     seen = m * c.apex_angle
@@ -300,8 +297,8 @@ def _ends(c: Corners, sources: _Sources, m: int) -> ComplexArray:
             rho_edge = np.sqrt(on_edge * on_edge + an * an)
             to_edge = np.sqrt(rho_edge * rho_edge + half[:n] * half[:n])
             # H and E/η along that edge of the diffracted wave; then H square to that plate.
-            h_edge: ComplexArray | float = 0.0
-            e_edge: ComplexArray | float = 0.0
+            h_edge: WaveArray | float = 0.0
+            e_edge: WaveArray | float = 0.0
             for sense, direct, field in lit:
                 wave = field * tail(_root(over - direct)) * spread(direct, over)
                 h_edge, e_edge = h_edge - wave, e_edge - sense * wave
