@@ -26,6 +26,10 @@ _MARGIN: Final = 0.08
 """Air around the points, as a part of their span."""
 
 
+_NEAR_DB: Final = 3.0
+"""How far outside the designs' gains the aperture's line may start and still be shown, dB."""
+
+
 @dataclass(frozen=True, kw_only=True, eq=False)
 class Axis:
     """One goal of a front: a value a design, and what is required of it.
@@ -96,15 +100,6 @@ def draw_front(
         figure = new_figure(7.2, 4.6, title=title)
         axes = figure.add_subplot()
         axes.set(xlabel=x.label, ylabel=y.label, xlim=x.limits(), ylim=y.limits())
-        label = "ruled out by a requirement"
-        for direction, axis in (("x", x), ("y", y)):
-            for sense, limit in (("min", axis.minimum), ("max", axis.maximum)):
-                if limit is not None:
-                    rule_out(axes, direction, sense, limit, label=label)
-                    label = "_"
-        if aperture_hz is not None:
-            _aperture(axes, aperture_hz)
-        _designs(figure, axes, x, y, np.asarray(meets, dtype=bool), colour)
         for index, (role, row) in enumerate(recommended.items()):
             mark = mark_of(role, index)
             axes.plot(
@@ -119,16 +114,31 @@ def draw_front(
                 label=f"{role.replace('_', ' ')}: {x.values[row]:.3g} {x.unit},"
                 f" {y.values[row]:.2f} {y.unit}",
             )
+        if aperture_hz is not None:
+            _aperture(axes, aperture_hz)
+        label = "ruled out by a requirement"
+        for direction, axis in (("x", x), ("y", y)):
+            for sense, limit in (("min", axis.minimum), ("max", axis.maximum)):
+                if limit is not None:
+                    rule_out(axes, direction, sense, limit, label=label)
+                    label = "_"
+        _designs(figure, axes, x, y, np.asarray(meets, dtype=bool), colour)
         figure.legend(loc="outside lower left", ncols=2, columnspacing=2.0, handletextpad=0.6)
     return figure
 
 
 def _aperture(axes: Axes, frequency_hz: float) -> None:
-    low, high = axes.get_xlim()
-    area = np.linspace(max(low, 1e-3 * high), high, 200)
+    """Draw the aperture's line, and make room for its lower end if that is within a few dB."""
+    left, right = axes.get_xlim()
+    bottom, top = axes.get_ylim()
+    area = np.linspace(max(left, 1e-3 * right), right, 200)
+    gain = aperture_gain_dbi(area, frequency_hz)
+    if not bottom - _NEAR_DB < gain[0] < top + _NEAR_DB:
+        return
+    axes.set_ylim(min(bottom, gain[0]), max(top, gain[0] + 0.5))
     axes.plot(
         area,
-        aperture_gain_dbi(area, frequency_hz),
+        gain,
         color=GREY,
         linestyle=(0, (6, 2, 1, 2)),
         linewidth=1.2,

@@ -43,6 +43,18 @@ def test_aperture_line_is_drawn_for_its_frequency() -> None:
     np.testing.assert_allclose(10.0 ** (gain / 10.0) * wavelength**2 / (4.0 * np.pi), area)
 
 
+def test_a_far_aperture_line_is_left_out_and_a_near_one_is_in_view() -> None:
+    def line_of(frequency_hz: float) -> tuple[bool, bool]:
+        axes = _front(aperture_hz=frequency_hz).axes[0]
+        found = [ln for ln in axes.lines if "uniformly" in str(ln.get_label())]
+        low, high = axes.get_ylim()
+        gains = [g for ln in found for g in np.asarray(ln.get_ydata(), dtype=np.float64)]
+        return bool(found), any(low < g < high for g in gains)
+
+    assert line_of(868e6) == (True, True)
+    assert line_of(5e9) == (False, False)
+
+
 def test_roles_stand_on_their_designs_and_are_named() -> None:
     figure = _front()
     area = np.linspace(0.08, 0.2, 12)
