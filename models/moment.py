@@ -198,7 +198,7 @@ def _alone(case: Case, wire: Wire, shapes: ComplexArray, modes: ComplexArray, sk
     path = (case.k * case.spacing)[:, None] * (np.sin(theta) * np.cos(phi))
     rod = shapes.conj().swapaxes(1, 2) @ wire.current_square() @ shapes
     return Response(
-        theta=wire.far_field(shapes, np.cos(theta)) * np.exp(1j * path)[..., None],
+        theta=wire.far_field(shapes, np.cos(theta)).swapaxes(1, 2) * np.exp(1j * path)[:, None],
         phi=np.zeros(1, dtype=np.complex128),
         impedance=np.asarray(shapes.swapaxes(1, 2) @ modes @ shapes, dtype=np.complex128),
         square=rod / (2.0 * np.pi * case.dipole_radius[:, None, None]),
@@ -277,8 +277,8 @@ def _drive(shapes: ComplexArray, alone: Response, plates: Response) -> Answer:
     shares = shares * impedance
     square = shares.conj().swapaxes(1, 2) @ (alone.square + plates.square) @ shares
     return Answer(
-        theta=np.matmul(alone.theta + plates.theta, shares)[..., 0],
-        phi=np.matmul(plates.phi, shares)[..., 0],
+        theta=np.matmul(shares.swapaxes(1, 2), alone.theta + plates.theta)[:, 0],
+        phi=np.matmul(shares.swapaxes(1, 2), plates.phi)[:, 0],
         impedance=np.asarray(impedance[:, 0, 0], dtype=np.complex128),
         square=square[:, 0, 0].real,
     )

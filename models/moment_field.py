@@ -134,7 +134,7 @@ class View:
 def plates_far_field(
     grid: Grid, currents: ComplexArray, view: View
 ) -> tuple[ComplexArray, ComplexArray]:
-    """Return f_θ (n, n_dir, m) of both plates, and f_φ off the cuts (on them it is 0).
+    """Return f_θ (n, m, n_dir) of both plates, and f_φ off the cuts (on them it is 0).
 
     Parameters
     ----------
@@ -149,16 +149,16 @@ def plates_far_field(
     j_z, j_s = grid.split(currents)
     sine, cosine = np.sin(sky.theta), np.cos(sky.theta)
     at_cells, at_edges = _waves(grid, cells.k[:, None] * sine * view.along)
-    edges, middles = (cells.k[:, None, None] * z[:, None] for z in grid.heights())
-    even, odd = np.cos(edges * cosine[:, None]), np.sin(middles * cosine[:, None])
+    edges, middles = (cells.k[:, None, None] * z[..., None] for z in grid.heights())
+    even, odd = np.cos(edges * cosine), np.sin(middles * cosine)
     moment_z, moment_s = (cells.k * size for size in (cells.size_z, 1j * cells.size_s))
-    even *= moment_z[:, None, None] * sine[:, None]
+    even *= moment_z[:, None, None] * sine
     f_theta = _sum(at_cells[0] + at_cells[1], even, j_z)
     # Nothing of J_s, which is odd in z, is seen on the H-plane.
     tilted, off = slice(sky.count, None), slice(2 * sky.count, None)
     toward = _both(at_edges, cosine * view.along, tilted)
-    f_theta[:, tilted] -= moment_s[:, None, None] * _sum(toward, odd[:, tilted], j_s)
-    aside = _sum(_both(at_edges, view.across, off), odd[:, off], j_s)
+    f_theta[..., tilted] -= moment_s[:, None, None] * _sum(toward, odd[..., tilted], j_s)
+    aside = _sum(_both(at_edges, view.across, off), odd[..., off], j_s)
     return f_theta, -moment_s[:, None, None] * aside
 
 
@@ -183,12 +183,12 @@ def _waves(grid: Grid, k_along: FloatArray) -> tuple[ComplexArray, ComplexArray]
 
 
 def _sum(along_s: ComplexArray, along_z: FloatArray, currents: ComplexArray) -> ComplexArray:
-    """Return Σ of currents (n, n_s, rows, m) times (n, n_s, n_dir) times (n, n_dir, rows)."""
+    """Return Σ of currents (n, n_s, rows, m) times (n, n_s, n_dir) times (n, rows, n_dir)."""
     size, n_s, rows, m = currents.shape
-    flat = currents.swapaxes(2, 3).reshape(size, n_s, m * rows)
-    over_s: ComplexArray = (along_s.swapaxes(1, 2) @ flat).reshape(size, -1, m, rows)
-    over_s *= along_z[:, :, None]
-    return np.asarray(over_s.sum(axis=3))
+    flat = currents.transpose(0, 3, 2, 1).reshape(size, m * rows, n_s)
+    over_s: ComplexArray = (flat @ along_s).reshape(size, m, rows, -1)
+    over_s *= along_z[:, None]
+    return np.asarray(over_s.sum(axis=2))
 
 
 def _turn(phase: FloatArray) -> ComplexArray:

@@ -86,14 +86,14 @@ def between_plates(cells: Cells, reach: int) -> tuple[ComplexArray, ComplexArray
     """
     one, two, close, at_centres, at_edges = _pair_places(cells.count_s, reach)
     s = np.concatenate([cells.centres(), cells.edges()], axis=1)
-    table = _far(cells, s[:, one], s[:, two])
+    table = _far(cells, s.take(one, axis=1), s.take(two, axis=1))
     rows = min(_NEAR_ROWS, cells.count_z)
-    here = s[:, np.concatenate([one[close], two[close]])]
-    there = s[:, np.concatenate([two[close], one[close]])]
+    here = s.take(np.concatenate([one[close], two[close]]), axis=1)
+    there = s.take(np.concatenate([two[close], one[close]]), axis=1)
     cosine, sine = (f(cells.apex_angle)[:, None] for f in (np.cos, np.sin))
     near = _near(cells, here * cosine - there, np.abs(here * sine), rows)
     table[:, close, :rows] = 0.5 * (near[:, : close.size] + near[:, close.size :])
-    return table[:, at_centres], table[:, at_edges]
+    return table.take(at_centres, axis=1), table.take(at_edges, axis=1)
 
 
 @lru_cache(maxsize=64)

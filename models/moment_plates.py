@@ -90,7 +90,7 @@ class Grid:
         """
         cells = self.cells
         shift = np.arange(cells.count_s)
-        own = own_plate(cells)[:, np.abs(shift[:, None] - shift)]
+        own = own_plate(cells).take(np.abs(shift[:, None] - shift), axis=1)
         table, at_edges = between_plates(cells, reach)
         # J_s on the other plate points along its slope, cos α of it this way.
         turn = np.cos(cells.apex_angle)[:, None, None, None]

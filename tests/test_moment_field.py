@@ -79,5 +79,5 @@ def test_plates_far_field(count_z: int) -> None:
     phi_hat = np.stack([-np.sin(sky.phi), np.cos(sky.phi), np.zeros(sky.phi.size)])
     f_theta, f_phi = (-k / 2.0 * (hat * total).sum(axis=0) for hat in (theta_hat, phi_hat))
     found_theta, found_phi = plates_far_field(grid, unknowns, View.of(sky, cells.apex_angle))
-    assert found_theta[0, :, 0] == pytest.approx(f_theta, abs=1e-9)
-    assert found_phi[0, :, 0] == pytest.approx(f_phi[2 * sky.count :], abs=1e-9)
+    assert found_theta[0, 0] == pytest.approx(f_theta, abs=1e-9)
+    assert found_phi[0, 0] == pytest.approx(f_phi[2 * sky.count :], abs=1e-9)
