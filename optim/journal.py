@@ -11,7 +11,6 @@ from __future__ import annotations
 
 import fcntl
 import json
-import math
 import os
 from collections import deque
 from collections.abc import Iterator
@@ -266,9 +265,9 @@ def _entry(line: bytes) -> dict[str, Any] | None:
 
 def _encode(matrix: FloatArray) -> list[list[float | str]]:
     rows: list[list[float | str]] = matrix.tolist()
-    if np.isfinite(matrix).all():
-        return rows
-    return [[v if math.isfinite(v) else str(v) for v in map(float, row)] for row in rows]
+    for row, column in np.argwhere(~np.isfinite(matrix)).tolist():
+        rows[row][column] = str(rows[row][column])
+    return rows
 
 
 def _decode(rows: list[list[float | str]]) -> FloatArray:

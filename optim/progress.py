@@ -6,20 +6,26 @@ are left out only when quiet.
 
 from __future__ import annotations
 
+import math
+import time
 from collections.abc import Callable, Iterator
 from contextlib import contextmanager
+from functools import partial
 from types import TracebackType
-from typing import Self
+from typing import Final, Self
 
 from rich.console import Console
-from rich.progress import BarColumn, TextColumn, TimeRemainingColumn
+from rich.progress import BarColumn, TaskID, TextColumn, TimeRemainingColumn
 from rich.progress import Progress as Bars
 
 from optim.referee import Referee
 
 __all__ = ["Progress"]
 
-SQUARE_CENTIMETRES = 1e4
+REDRAW: Final = 0.5
+"""Least time between two pictures of the bar, s; drawing one takes some milliseconds."""
+
+SQUARE_CENTIMETRES: Final = 1e4
 """cm² in a square metre."""
 
 
@@ -45,8 +51,9 @@ class Progress:
             console=self._console,
             disable=quiet or not self._console.is_terminal,
             transient=True,
-            refresh_per_second=4,
+            auto_refresh=False,
         )
+        self._drawn = -math.inf
 
     def __enter__(self) -> Self:
         self._bars.start()
@@ -68,13 +75,15 @@ class Progress:
     def stage(self, name: str, generations: int) -> Iterator[Callable[[Referee], None]]:
         """Show a bar of `generations` steps; call what it gives after each of them."""
         task = self._bars.add_task(name, total=generations, found="")
-
-        def told(referee: Referee) -> None:
-            if not self._bars.disable:
-                self._bars.update(task, advance=1, found=found(referee), refresh=True)
-
-        yield told
+        yield partial(self.tell, task)
         self._bars.remove_task(task)
+
+    def tell(self, task: TaskID, referee: Referee) -> None:
+        """Show one more generation of a stage."""
+        if not self._bars.disable:
+            due = time.monotonic() - self._drawn > REDRAW
+            self._bars.update(task, advance=1, found=found(referee), refresh=due)
+            self._drawn = time.monotonic() if due else self._drawn
 
 
 def found(referee: Referee) -> str:

@@ -64,7 +64,7 @@ def test_front_is_feasible_unbeaten_and_not_too_long() -> None:
 
 
 def test_nearest_miss_least_and_differ_in_what_they_miss() -> None:
-    violations = [[0.5, -1, 0], [0.4, -1, 0], [-1, 0.6, 0], [0.3, 0.4, 0], [-1, -1, 9]]
+    violations = [[0.5, -1.0, 0], [0.4, -1.0, 0], [-1.0, 0.6, 0], [0.3, 0.4, 0], [-1.0, -1.0, 9]]
     near = nearest_rows(judged([[0.0]] * 5, violations))
     assert near.tolist() == [1, 2, 3]
 
