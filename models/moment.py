@@ -163,18 +163,8 @@ def radiate(
 
 def _solve(case: Case, key: list[int], build: Build, feed: Feed) -> Pattern:
     """Return the pattern of pairs on grids of equal counts, without the frequency axis."""
-    base_s, base_z, reach, order = key
-    sky = Sky.of(order)
-    wire = Wire(modes=MODES, k=case.k, length=case.dipole_length, radius=case.dipole_radius)
-    modes = wire.impedance()
-    shapes = driven_shapes(wire, modes) if feed == "solved" else sinusoidal_shape(wire)
-    alone = _alone(case, wire, shapes, modes, sky)
-    view = View.of(sky, case.apex_angle)
-    grids = [
-        _respond(case, wire, shapes, view, (f * base_s, f * base_z), reach) for f in PROPORTION
-    ]
-    answer = _drive(shapes, alone, _limit(grids, (0, 2, 4)))
-    rough = _drive(shapes, alone, _limit(grids[1:], (0, 2)))
+    sky = Sky.of(key[3])
+    answer, rough = answers(case, key, feed, sky)
     resistance = answer.impedance.real
     # √(ωμ/2σ) times the currents' squares: the loss is small enough not to change the currents.
     skin = np.sqrt(case.k * ETA0 / (2.0 * build.conductivity))
@@ -189,6 +179,33 @@ def _solve(case: Case, key: list[int], build: Build, feed: Feed) -> Pattern:
         reactance=answer.impedance.imag,
         efficiency=resistance / (resistance + loss),
         doubt_db=_doubt(sky, answer, rough),
+    )
+
+
+def answers(case: Case, key: list[int], feed: Feed, sky: Sky) -> tuple[Answer, Answer]:
+    """Return fields towards `sky` and impedance of pairs, from all grids and from the finer two.
+
+    Parameters
+    ----------
+    case : Case
+        n pairs.
+    key : list of int
+        Their counts, as `Case.counts` gives them.
+    feed : {"solved", "sinusoidal"}
+    sky : Sky
+    """
+    base_s, base_z, reach, _ = key
+    wire = Wire(modes=MODES, k=case.k, length=case.dipole_length, radius=case.dipole_radius)
+    modes = wire.impedance()
+    shapes = driven_shapes(wire, modes) if feed == "solved" else sinusoidal_shape(wire)
+    alone = _alone(case, wire, shapes, modes, sky)
+    view = View.of(sky, case.apex_angle)
+    grids = [
+        _respond(case, wire, shapes, view, (f * base_s, f * base_z), reach) for f in PROPORTION
+    ]
+    return (
+        _drive(shapes, alone, _limit(grids, (0, 2, 4))),
+        _drive(shapes, alone, _limit(grids[1:], (0, 2))),
     )
 
 

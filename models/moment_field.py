@@ -15,6 +15,7 @@ from functools import lru_cache
 import numpy as np
 
 from models.conventions import ComplexArray, FloatArray
+from models.moment_kernel import cosine_and_sine
 from models.moment_plates import Grid
 from models.pattern import CUT_ANGLES
 
@@ -194,6 +195,5 @@ def _sum(along_s: ComplexArray, along_z: FloatArray, currents: ComplexArray) -> 
 def _turn(phase: FloatArray) -> ComplexArray:
     """Return e^{j·phase}."""
     wave = np.empty(phase.shape, dtype=np.complex128)
-    np.cos(phase, out=wave.real)
-    np.sin(phase, out=wave.imag)
+    wave.real, wave.imag = cosine_and_sine(phase)
     return wave

@@ -18,7 +18,7 @@ import numpy as np
 
 from models.conventions import ComplexArray, FloatArray
 
-__all__ = ["Cells", "between_plates", "near_reach", "own_plate"]
+__all__ = ["Cells", "between_plates", "cosine_and_sine", "near_reach", "own_plate"]
 
 _GAUSS: Final = 0.5 / np.sqrt(3.0)
 _NEAR_ROWS: Final = 2
@@ -56,6 +56,18 @@ class Cells:
         """Return s of the edges between cells, m, (n, count_s - 1)."""
         steps = np.arange(1, self.count_s)
         return np.asarray(self.start[:, None] + self.size_s[:, None] * steps)
+
+
+def cosine_and_sine(phase: FloatArray) -> tuple[FloatArray, FloatArray]:
+    """Return cos and sin of `phase`, radians, by the tangent of its half.
+
+    For float64 numpy has a vector tangent but no vector sine: half the time of two calls.
+    """
+    tangent = np.tan(0.5 * phase)
+    sine = 2.0 / (1.0 + tangent**2)
+    cosine = sine - 1.0
+    sine *= tangent
+    return cosine, sine
 
 
 def near_reach(apex_angle: FloatArray) -> FloatArray:
@@ -131,7 +143,7 @@ def _far(cells: Cells, s: FloatArray, t: FloatArray) -> ComplexArray:
     along += bend
     along += 1.0
     bend *= phase
-    sin, cos = np.sin(phase), np.cos(phase)
+    cos, sin = cosine_and_sine(phase)
     kernel = np.empty(phase.shape, dtype=np.complex128)
     np.multiply(inverse, along * cos + bend * sin, out=kernel.real)
     np.multiply(inverse, bend * cos - along * sin, out=kernel.imag)
@@ -164,12 +176,12 @@ def _near(cells: Cells, u: FloatArray, height: FloatArray, rows: int) -> Complex
     y = (v[:, :, None] + size_z[..., None] * np.array([-_GAUSS, _GAUSS])).reshape(u.shape[0], -1)
     radius = np.sqrt((x**2)[..., None] + (y**2)[:, None, None, :] + squared)
     half_phase = 0.5 * cells.k[:, None, None, None] * radius
-    sin = np.sin(half_phase)
-    radius *= 2.0
+    tangent = np.tan(half_phase)
+    radius *= 2.0 + 2.0 * tangent**2
     kernel = np.empty(mean.shape, dtype=np.complex128)
-    # cos x − 1 loses digits for small x; −2 sin²(x/2) does not.
-    kernel.real = mean - _four(sin**2 / radius)
-    kernel.imag = -_four(sin * np.cos(half_phase) / radius)
+    # cos x − 1 loses digits for small x; −2 sin²(x/2) does not, nor does it need a sine.
+    kernel.real = mean - _four(tangent**2 / radius)
+    kernel.imag = -_four(tangent / radius)
     return kernel
 
 

@@ -17,6 +17,7 @@ from scipy.special import sici
 
 from models.conventions import ETA0, ComplexArray, FloatArray
 from models.dipole import far_field
+from models.moment_kernel import cosine_and_sine
 
 __all__ = ["Wire", "driven_shapes", "sinusoidal_shape"]
 
@@ -93,8 +94,9 @@ class Wire:
         phase = self.k[:, None, None, None] * radius
         size = height / radius if radial else 1.0 / radius
         wave: ComplexArray = np.empty(radius.shape, dtype=np.complex128)
-        np.multiply(np.cos(phase), size, out=wave.real)
-        np.multiply(np.sin(phase), -size, out=wave.imag)
+        cosine, sine = cosine_and_sine(phase)
+        np.multiply(cosine, size, out=wave.real)
+        np.multiply(sine, -size, out=wave.imag)
         # Three spherical waves a mode, at its ends and its centre.
         full = np.concatenate([shapes[:, :0:-1], shapes], axis=1)
         electric = (self.k * self.step)[:, None, None]
