@@ -32,6 +32,8 @@ __all__ = ["EDGE", "Grid", "grid_cells"]
 EDGE: Final = 0.17466
 """How far inside the last cell's end the edge of a strip acts, in cells."""
 
+_REMEMBERED_CELLS: Final = 256
+
 
 def apex_shift(apex_angle: FloatArray) -> FloatArray:
     """Return how far the first cell reaches beyond the apex, in cells, (n,)."""
@@ -164,7 +166,7 @@ class Grid:
         return np.asarray(unknowns.conj().swapaxes(1, 2) @ (weights[..., None] * unknowns))
 
 
-@lru_cache(maxsize=64)
+@lru_cache(maxsize=128)
 def _fold_indices(n_s: int, n_z: int) -> tuple[np.ndarray, ...]:
     """Return places in the three tables of direct and mirrored partner, and the direct sign."""
     rows, odd = n_z // 2, n_z % 2
@@ -193,7 +195,9 @@ def _fold_indices(n_s: int, n_z: int) -> tuple[np.ndarray, ...]:
 
 def _fold(n_s: int, n_z: int, zz: ComplexArray, zs: ComplexArray, ss: ComplexArray) -> ComplexArray:
     """Return the matrix of a quarter from tables over distance: J_z is even in z, J_s odd."""
-    zz_one, zz_two, zs_one, zs_two, ss_one, ss_two, sign = _fold_indices(n_s, n_z)
+    # Small grids come again and again; the places of large ones are not worth their memory.
+    indices = _fold_indices if n_s * n_z <= _REMEMBERED_CELLS else _fold_indices.__wrapped__
+    zz_one, zz_two, zs_one, zs_two, ss_one, ss_two, sign = indices(n_s, n_z)
     size, first, total = zz.shape[0], zz_one.shape[0], zz_one.shape[0] + ss_one.shape[0]
     zz, zs, ss = (x.reshape(size, -1) for x in (zz, zs, ss))
     matrix = np.empty((size, total, total), dtype=np.complex128)
