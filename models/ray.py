@@ -1,8 +1,8 @@
 """`ray`: the finite corner by rays at the plates and radiation of the currents they leave there.
 
-Far fields on both cuts; impedance and radiated power by reaction of the currents on the dipole's
-sinusoidal current (induced EMF). Currents: `models.ray_currents`. Integrals over s and z are Gauss-
-Jacobi sums with the weight of a plate edge, (1 − x)^{-1/2}.
+Far fields on both cuts and the power through the sphere; impedance by reaction of the currents on
+the dipole's sinusoidal current (induced EMF). Currents: `models.ray_currents`. Integrals over s and
+z are Gauss-Jacobi sums with the weight of a plate edge, (1 − x)^{-1/2}.
 
 Valid from w, L of about 0.6 λ.
 """
@@ -117,14 +117,16 @@ def _solve(
     field = near_field(1.0, dipole[:, None, None], distance[:, :, None], z[:, None, :])
     reaction = mutual_impedance(1.0, dipole, diameter / 2.0)
     reaction -= 4.0 * (field * moment_z).sum(axis=(1, 2))
-    radiated = ETA0 / np.pi * power
+    # Two measures of one power: over the sphere the better ratio to the field (directivity), by
+    # reaction the better resistance; how far they are apart is the model's own doubt.
+    outward = ETA0 / np.pi * power
+    radiated = np.maximum(reaction.real, 0.3 * outward)
     density = along_z.real**2 + along_z.imag**2 + along_s.real**2 + along_s.imag**2
     plates = 4.0 * (density * weight).sum(axis=(1, 2), dtype=np.float64)
     rod = (dipole - np.sin(dipole)) / 2.0 / (np.pi * diameter)  # ∫ sin²(h − |z|) dz over 2πa
     lost = skin * (plates + rod)
     gap = terminal(radiated + lost + 1j * reaction.imag, 1.0, dipole)
-    # Power in by reaction against power out over the sphere: the model's own measure of its error.
-    doubt = np.abs(decibels(np.maximum(reaction.real, 1e-3) / radiated))
+    doubt = np.abs(decibels(np.maximum(reaction.real, 1e-3 * outward) / outward))
     return np.stack([h_field, e_field]), np.stack(
         [power, gap.real, gap.imag, radiated / (radiated + lost), doubt]
     )

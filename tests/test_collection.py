@@ -11,6 +11,8 @@ ROOT = Path(__file__).parents[1]
 
 TESTED_ELSEWHERE = {
     "models/conventions.py": "constants and two one-line functions, used by every test",
+    "models/pattern.py": "a record and a row of angles, made and read in test_figures.py",
+    "models/ray_currents.py": "the currents whose radiation test_ray.py checks",
     "models/moment_field.py": "a part of the solver that test_moment.py checks",
     "models/moment_kernel.py": "a part of the solver that test_moment.py checks",
     "models/moment_plates.py": "a part of the solver that test_moment.py checks",
