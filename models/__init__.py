@@ -3,6 +3,6 @@
 from models.build import Build
 from models.figures import Figures, Terms
 from models.geometry import Reflectors
-from models.ladder import MODELS, evaluate, radiate
+from models.ladder import MODELS, evaluate, radiate, sphere
 
-__all__ = ["MODELS", "Build", "Figures", "Reflectors", "Terms", "evaluate", "radiate"]
+__all__ = ["MODELS", "Build", "Figures", "Reflectors", "Terms", "evaluate", "radiate", "sphere"]

@@ -26,7 +26,7 @@ from models.moment_plates import Grid, grid_cells
 from models.moment_wire import Wire, driven_shapes, sinusoidal_shape
 from models.pattern import CUT_ANGLES, Pattern
 
-__all__ = ["Feed", "radiate"]
+__all__ = ["DENSITIES", "ENOUGH_DB", "Answer", "Case", "Feed", "answers", "doubt", "radiate"]
 
 Feed = Literal["solved", "sinusoidal"]
 """The dipole's current: solved with the plates, or imposed."""
@@ -178,7 +178,7 @@ def _solve(case: Case, key: list[int], build: Build, feed: Feed) -> Pattern:
         resistance=resistance + loss,
         reactance=answer.impedance.imag,
         efficiency=resistance / (resistance + loss),
-        doubt_db=_doubt(sky, answer, rough),
+        doubt_db=doubt(sky, answer, rough),
     )
 
 
@@ -301,7 +301,7 @@ def _drive(shapes: ComplexArray, alone: Response, plates: Response) -> Answer:
     )
 
 
-def _doubt(sky: Sky, answer: Answer, rough: Answer) -> FloatArray:
+def doubt(sky: Sky, answer: Answer, rough: Answer) -> FloatArray:
     """Return how far grids, and radiated and accepted power, disagree, dB."""
     with np.errstate(divide="ignore", invalid="ignore"):
         level = [sky.boresight(a.theta) / np.sqrt(a.impedance.real) for a in (answer, rough)]

@@ -1,4 +1,4 @@
-"""What a model hands over: far fields on the two principal cuts and the power behind them.
+"""What a model hands over: far fields on the principal cuts or the sphere, the power behind them.
 
 Every model here is mirror symmetric in y and in z, so half a cut (0 = boresight, π = rear) is the
 whole. A field f is E_θ·r·e^{jkr} over jη·I/(2π), where I is the dipole's sinusoidal current maximum
@@ -15,7 +15,7 @@ import numpy as np
 
 from models.conventions import ComplexArray, FloatArray
 
-__all__ = ["CUT_ANGLES", "Pattern"]
+__all__ = ["CUT_ANGLES", "Pattern", "Sphere"]
 
 CUT_ANGLES: Final[FloatArray] = np.radians(np.arange(0.0, 181.0, 2.0))
 """Angles off boresight at which models give both cuts, radians, (n_angle,)."""
@@ -68,3 +68,34 @@ class Pattern:
                 )
             },
         )
+
+
+@dataclass(frozen=True, kw_only=True, eq=False)
+class Sphere:
+    """Fields of n designs at n_freq frequencies all around, both polarisations, scaled as above.
+
+    Parameters
+    ----------
+    theta : (n_theta,)
+        From the z axis, radians.
+    phi : (n_phi,)
+        From boresight towards +y, radians.
+    theta_field, phi_field : (n, n_freq, n_theta, n_phi)
+        Complex field along θ and along φ.
+    power : (n, n_freq)
+        Directivity is abs(field)**2 / power.
+    efficiency : (n, n_freq)
+        Radiated over accepted power, 0 to 1.
+    """
+
+    theta: FloatArray
+    phi: FloatArray
+    theta_field: ComplexArray
+    phi_field: ComplexArray
+    power: FloatArray
+    efficiency: FloatArray
+
+    def gains(self) -> tuple[FloatArray, FloatArray]:
+        """Return gain by polarisation, θ and φ, as power ratios (n, n_freq, n_theta, n_phi)."""
+        scale = (self.efficiency / self.power)[..., None, None]
+        return np.abs(self.theta_field) ** 2 * scale, np.abs(self.phi_field) ** 2 * scale
