@@ -29,8 +29,8 @@ PANELS: Final = {
     "beamwidth_e_deg": "E-plane beamwidth (degrees)",
     "front_to_back_db": "front-to-back ratio (dB)",
     "sidelobe_db": "side lobe level (dB)",
-    "mask_h_db": "H-plane excess over envelope (dB)",
-    "mask_e_db": "E-plane excess over envelope (dB)",
+    "mask_h_db": "H-plane over envelope (dB)",
+    "mask_e_db": "E-plane over envelope (dB)",
     "resistance_ohm": "input resistance (Ω)",
     "vswr": "VSWR",
 }
