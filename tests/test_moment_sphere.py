@@ -36,7 +36,8 @@ def test_agrees_with_both_cuts(cuts: models.pattern.Pattern) -> None:
     scale = np.abs(cuts.h_field).max()
     assert np.abs(flat.theta_field[:, :, 0] - cuts.h_field[..., ::5]).max() < 1e-4 * scale
     # On the way over the zenith the rear half of the E-plane has φ = π.
-    upright = _sphere(np.asarray(np.abs(np.pi / 2.0 - turn)), np.array([0.0, np.pi]))
+    elevated = np.asarray(np.abs(np.pi / 2.0 - turn), dtype=np.float64)
+    upright = _sphere(elevated, np.array([0.0, np.pi]))
     ahead = turn <= np.pi / 2.0 + 1e-9
     e_plane = np.where(ahead, upright.theta_field[..., 0], upright.theta_field[..., 1])
     # At the zenith θ has no one direction; nothing radiates along the dipole's own axis but the
