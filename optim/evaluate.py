@@ -27,6 +27,9 @@ __all__ = ["CHUNK", "Evaluator"]
 CHUNK: Final = 25
 """Designs a worker takes at a time."""
 
+IDLE: Final = 60.0
+"""Seconds after which workers without work end, also when this process was killed."""
+
 
 class Evaluator:
     """A model, ready to judge populations against what `requirements` asks about.
@@ -82,7 +85,11 @@ class Evaluator:
         if self._pool is None:
             options: dict[str, Any] = {}
             if self._backend == "loky":
-                options = {"inner_max_num_threads": 1, "initializer": _leave_interrupts_to_main}
+                options = {
+                    "inner_max_num_threads": 1,
+                    "initializer": _leave_interrupts_to_main,
+                    "idle_worker_timeout": IDLE,
+                }
             with parallel_config(self._backend, **options):
                 pool = Parallel(n_jobs=self._jobs, batch_size=1, max_nbytes=None)
             self._pool = self._exit.enter_context(pool)

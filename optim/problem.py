@@ -30,6 +30,9 @@ __all__ = ["View", "door", "genetic", "whole"]
 View = Callable[[Judged], tuple[FloatArray, FloatArray]]
 """What a search looks at: objectives (n, n_goals) and total violation (n,) of judged designs."""
 
+SPREAD: Final = 8.0
+"""Distribution index of crossover and mutation: the usual 15 to 20 snap back onto the parents."""
+
 FEW_GOALS: Final = 2
 """Up to so many goals the crowding distance spreads a front well; past it, nearest neighbours."""
 
@@ -121,8 +124,8 @@ def genetic(
     algorithm = NSGA2(
         pop_size=population,
         sampling=start,
-        crossover=SBX(eta=15, prob=0.9),
-        mutation=PM(eta=20),
+        crossover=SBX(eta=SPREAD, prob=0.9),
+        mutation=PM(eta=SPREAD),
         survival=RankAndCrowding(crowding_func="cd" if n_goals <= FEW_GOALS else "mnn"),
         repair=Buildable(space),
         eliminate_duplicates=Unseen(archive),

@@ -31,7 +31,7 @@ def dominates(a: FloatArray, b: FloatArray) -> bool:
 
 
 @given(points)
-@settings(derandomize=True, max_examples=200, deadline=None)
+@settings(derandomize=True, max_examples=80, deadline=None)
 def test_nondominated_is_the_definition(objectives: FloatArray) -> None:
     literal = [
         i
@@ -43,7 +43,7 @@ def test_nondominated_is_the_definition(objectives: FloatArray) -> None:
 
 
 @given(points, st.integers(1, 10))
-@settings(derandomize=True, max_examples=100, deadline=None)
+@settings(derandomize=True, max_examples=50, deadline=None)
 def test_diverse_keeps_the_best_of_each_goal(objectives: FloatArray, count: int) -> None:
     rows = diverse(objectives, count)
     assert len(rows) == min(count, len(objectives)) == len(set(rows.tolist()))
