@@ -51,7 +51,8 @@ def test_integral_is_the_power() -> None:
     # Gauss-Legendre in cosθ and equal steps in φ: exact for the harmonics of plates this small.
     nodes, weights = (np.asarray(x) for x in np.polynomial.legendre.leggauss(24))
     steps = 48
-    around = _sphere(np.arccos(nodes), np.arange(steps) * (2.0 * np.pi / steps))
+    theta = np.asarray(np.arccos(nodes), dtype=np.float64)
+    around = _sphere(theta, np.linspace(0.0, 2.0 * np.pi, steps, endpoint=False))
     square = np.abs(around.theta_field) ** 2 + np.abs(around.phi_field) ** 2
     mean = square.mean(axis=-1) @ weights / 2.0
     # The model vouches for its power balance to 0.05 dB, 1.2 %.
