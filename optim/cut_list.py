@@ -47,7 +47,7 @@ def cut_list_text(reflectors: Reflectors, build: Build, *, name: str, folded: bo
     folded : bool
         Whether the feed is a folded dipole of two equal wires.
     """
-    return "\n".join(_lines(reflectors, build, name, folded)) + "\n"
+    return "\n".join(_lines(reflectors, build, name, folded=folded)) + "\n"
 
 
 def cut_list_csv(reflectors: Reflectors, build: Build) -> str:
@@ -101,7 +101,7 @@ def _sheet(use: Sheets) -> str:
     return " x ".join(f"{1e3 * side:g}" for side in use.size)
 
 
-def _lines(reflectors: Reflectors, build: Build, name: str, folded: bool) -> Iterator[str]:
+def _lines(reflectors: Reflectors, build: Build, name: str, *, folded: bool) -> Iterator[str]:
     rod, diameter = _rod(reflectors)
     apex_angle = np.degrees(float(reflectors.apex_angle[0]))
     yield f"Cut list: {name.replace('_', ' ')}. One antenna, all dimensions in mm."
