@@ -13,7 +13,7 @@ from typing import TYPE_CHECKING, Final
 import numpy as np
 from matplotlib.backends.backend_agg import FigureCanvasAgg
 from matplotlib.figure import Figure
-from matplotlib.patches import Arc, Polygon
+from matplotlib.patches import Arc, Circle, Polygon
 
 from models.conventions import FloatArray
 from optim.style import BLACK, GREY, INCH, TYPE, text_width
@@ -196,6 +196,12 @@ class Sheet:
             tip = np.array(centre) + radius * np.array([np.cos(angle), np.sin(angle)])
             heading = angle - sense * lean
             self.arrow(_point(tip), sense * np.array([-np.sin(heading), np.cos(heading)]))
+
+    def circle(self, centre: Point, radius: float) -> None:
+        """Draw a round hole."""
+        self.axes.add_patch(
+            Circle(centre, radius, facecolor="white", edgecolor=BLACK, linewidth=0.8, zorder=3)
+        )
 
     def scale_bar(self, place: Point, length: float, words: str) -> None:
         """Draw a bar of `length` mm on paper from `place`, half of it filled, with its text."""

@@ -2,8 +2,8 @@
 
 The sheet is A4 across; printed at its own size it is to the scale that it states.
 Front view as seen from boresight, the H-plane section below it with boresight downwards, and the
-blank of both plates laid flat with its bend line. Plates are measured along the sheet from the apex
-line to the rim; what a bend adds or takes, holes, boom and feed are left to the workshop.
+flat blank of `optim.cutting` with bend line and holes. Plates are measured along their inside faces
+from the apex line, sharp, to the rim; boom, feed and mast clamps are left to the workshop.
 """
 
 from __future__ import annotations
@@ -30,6 +30,7 @@ from optim.views import (
     plan_outline,
     plan_view,
     shape_of,
+    under_blank,
     words_of,
 )
 
@@ -79,8 +80,8 @@ def draw_sheet(
         Hz.
     """
     build = build or Build()
-    reduction = scale_for(reflectors)
-    shape, words = shape_of(reflectors, reduction), words_of(reflectors)
+    reduction = scale_for(reflectors, build)
+    shape, words = shape_of(reflectors, reduction, build), words_of(reflectors, build)
     layout = _layout(shape, words)
     with house_style():
         sheet = Sheet(*SHEET)
@@ -119,7 +120,7 @@ def draw_sketches(reflectors: Reflectors, names: Sequence[str], *, title: str = 
             sheet.text((4.0, height - 5.0), heading, size=10.0, bold=True)
         for row, name in enumerate(names):
             design = reflectors[row]
-            shape, x = shape_of(design, reduction), 4.0 + column * (row + 0.5)
+            shape, x = shape_of(design, reduction, Build()), 4.0 + column * (row + 0.5)
             y = height - head - 11.0 - shape.height / 2.0
             front_outline(sheet, (x, y), shape)
             plan_outline(sheet, (x, y - shape.height / 2.0 - 7.0), shape)
@@ -136,7 +137,7 @@ def draw_sketches(reflectors: Reflectors, names: Sequence[str], *, title: str = 
     return sheet.figure
 
 
-def scale_for(reflectors: Reflectors) -> float:
+def scale_for(reflectors: Reflectors, build: Build) -> float:
     """Return N of the scale 1:N at which the first design fills the sheet best.
 
     Raises
@@ -144,9 +145,9 @@ def scale_for(reflectors: Reflectors) -> float:
     ValueError
         Where no scale down to the smallest fits.
     """
-    words = words_of(reflectors)
+    words = words_of(reflectors, build)
     for reduction in _STEPS:
-        shape = shape_of(reflectors, reduction)
+        shape = shape_of(reflectors, reduction, build)
         used = _layout(shape, words).used
         if used[0] <= SHEET[0] - _FRAME and used[1] >= _FRAME:
             return reduction
@@ -165,16 +166,20 @@ def _layout(shape: Shape, words: Words) -> _Layout:
     heading = text_width(TITLES[0]) + 2.0 - side
     column = left + side + max(side + right, label, text_width(words.diameter) + 8.0, heading)
     front_x = _FRAME + 3.0 + left + side
-    blank_left = max(4.0, reach(words.plate, shape.plate), reach(words.blank, 2.0 * shape.plate))
-    blank_x = _FRAME + 3.0 + column + 6.0 + blank_left + shape.plate
-    blank_right = max(shape.plate + LEVEL + 5.0, text_width(words.bend) + 8.0)
+    blank_left = max(4.0, reach(words.half_blank, shape.blank), reach(words.blank, 2 * shape.blank))
+    blank_x = _FRAME + 3.0 + column + 6.0 + blank_left + shape.blank
+    notes = max(map(text_width, (words.flat, *words.notes))) + 2.0 - shape.blank
+    blank_right = max(shape.blank + LEVEL + 5.0, text_width(words.bend) + 8.0, notes)
     top = SHEET[1] - _FRAME - 20.0
     middle = top - shape.height / 2.0
     drop = max(reach(words.length, shape.length), reach(words.dipole, shape.dipole))
     plan_y = top - shape.height - max(4.0, drop) - 23.0
     spills = (reach(words.depth, shape.depth), reach(words.spacing, shape.spacing))
     below = max(base(shape, words) - shape.depth + LEVEL + 13.0, *spills)
-    blank_end = top - shape.height - max(LEVEL + 4.0, drop)
+    blank_end = min(
+        top - shape.height - drop,
+        middle - shape.length / 2.0 - under_blank(shape, words),
+    )
     return _Layout(
         front=(front_x, middle),
         plan=(front_x, plan_y),
@@ -239,7 +244,8 @@ def _title_block(
     sheet.scale_bar((left + 3.0, foot + 9.5), bar / reduction, f"{bar:g} mm")
     sheet.text((left + 76.0, foot + 10.3), f"scale {scale} on A4", bold=True)
     sheet.text(
-        (left + 3.0, foot + 4.0), "All dimensions in mm; plates along the sheet, apex line to rim."
+        (left + 3.0, foot + 4.0),
+        "All dimensions in mm; plates on the inside, sharp apex line to rim.",
     )
 
 

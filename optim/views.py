@@ -2,16 +2,20 @@
 
 Millimetres on paper, reduced from metres by N of the scale 1:N. The front view is that from
 boresight; the section has the apex on top and boresight downwards. Dimension lines stand one
-`LEVEL` off the outlines; text that does not fit between its arrows goes outside.
+`LEVEL` off the outlines; text that does not fit between its arrows goes outside. The flat sheet is
+that of `optim.cutting`, what the bend adds or takes included.
 """
 
 from __future__ import annotations
 
+from collections.abc import Iterator
 from typing import Final, NamedTuple
 
 import numpy as np
 
+from models.build import Build
 from models.geometry import Reflectors
+from optim.cutting import K_FACTOR, Blank, blank_of, plate_of
 from optim.drafting import Point, Sheet, millimetres, reach
 
 __all__ = [
@@ -23,16 +27,25 @@ __all__ = [
     "blank_view",
     "front_outline",
     "front_view",
+    "piece_of",
     "plan_outline",
     "plan_view",
     "shape_of",
+    "under_blank",
     "words_of",
 ]
 
 LEVEL: Final = 10.0
 """Distance of a dimension line from the outline, and from the next, mm."""
+NOTE: Final = 4.2
+"""Between the lines of notes, mm."""
 _METAL: Final = "#e4e4e4"
-TITLES: Final = ("Front view, from boresight", "Section in the H-plane", "Both plates laid flat")
+TITLES: Final = (
+    "Front view, from boresight",
+    "Section in the H-plane",
+    "Both plates laid flat",
+    "One of two plates",
+)
 
 
 class Shape(NamedTuple):
@@ -47,6 +60,10 @@ class Shape(NamedTuple):
     half_width: float
     rim: float
     depth: float
+    blank: float
+    """Half the width of the flat sheet."""
+    holes: tuple[tuple[float, float, float], ...]
+    """Across, along and diameter, from the middle of the flat sheet."""
 
     @property
     def height(self) -> float:
@@ -61,7 +78,10 @@ class Words(NamedTuple):
     bend: str
     spacing: str
     plate: str
+    flat: str
     blank: str
+    half_blank: str
+    notes: tuple[str, ...]
     length: str
     dipole: str
     diameter: str
@@ -69,9 +89,15 @@ class Words(NamedTuple):
     depth: str
 
 
-def shape_of(reflectors: Reflectors, reduction: float) -> Shape:
+def piece_of(reflectors: Reflectors, build: Build) -> Blank:
+    """Return the flat sheet that is drawn: both plates in one, or one of two where it must be."""
+    return blank_of(reflectors, build) or plate_of(reflectors, build)
+
+
+def shape_of(reflectors: Reflectors, reduction: float, build: Build) -> Shape:
     """Return the first design in mm on paper at the scale 1:`reduction`."""
     paper = 1e3 / reduction
+    piece = piece_of(reflectors, build)
     half = float(reflectors.apex_angle[0]) / 2.0
     plate = float(reflectors.plate_width[0]) * paper
     return Shape(
@@ -84,26 +110,44 @@ def shape_of(reflectors: Reflectors, reduction: float) -> Shape:
         half_width=plate * np.sin(half),
         rim=plate * np.cos(half),
         depth=float(reflectors.depth[0]) * paper,
+        blank=piece.width / 2.0 * paper,
+        holes=tuple((h.x * paper, h.y * paper, h.diameter * paper) for h in piece.holes),
     )
 
 
-def words_of(reflectors: Reflectors) -> Words:
+def words_of(reflectors: Reflectors, build: Build) -> Words:
     """Return the texts for the first design."""
     angle = np.degrees(float(reflectors.apex_angle[0]))
-    bend = 180.0 - angle
-    flat = bend < 5e-3
+    piece = piece_of(reflectors, build)
+    bend = f"bend line: bend by {_degrees(np.degrees(piece.bend_angle))}"
     return Words(
         angle=f"apex angle {_degrees(angle)}",
-        bend="flat, no bend" if flat else f"bend line: bend by {_degrees(bend)}",
+        bend=bend if piece.bent else "flat, no bend",
         spacing=millimetres(reflectors.spacing[0]),
         plate=millimetres(reflectors.plate_width[0]),
-        blank=millimetres(2.0 * reflectors.plate_width[0]),
+        flat=TITLES[2 if piece.pieces == 1 else 3],
+        blank=millimetres(piece.width, decimals=1),
+        half_blank=millimetres(piece.width / 2.0, decimals=1) if piece.bent else "",
+        notes=tuple(_notes(piece)),
         length=millimetres(reflectors.plate_length[0]),
         dipole=millimetres(reflectors.dipole_length[0]),
         diameter=f"dipole ⌀ {millimetres(reflectors.dipole_diameter[0])}",
         width=millimetres(reflectors.width[0], decimals=1),
         depth=millimetres(reflectors.depth[0], decimals=1),
     )
+
+
+def _notes(piece: Blank) -> Iterator[str]:
+    if piece.bent:
+        radius = millimetres(piece.radius)
+        yield f"this face inside; inside radius {radius}, neutral line at {K_FACTOR:g} of thickness"
+    if piece.holes:
+        boom, *bracket = piece.holes
+        x, y = (millimetres(abs(place)) for place in (bracket[0].x, bracket[0].y))
+        yield (
+            f"holes: boom ⌀ {millimetres(boom.diameter)} in the middle; bracket {len(bracket)} × "
+            f"⌀ {millimetres(bracket[0].diameter)}, {x} across and {y} along from it"
+        )
 
 
 def _degrees(angle: float) -> str:
@@ -223,31 +267,42 @@ def plan_view(sheet: Sheet, apex: Point, shape: Shape, words: Words) -> None:
 
 
 def blank_view(sheet: Sheet, centre: Point, shape: Shape, words: Words) -> None:
-    """Draw both plates laid flat with their bend line."""
+    """Draw the flat sheet with its bend line and holes, notes below it."""
     x, y = centre
-    half = shape.length / 2.0
-    sheet.text((x - shape.plate, y + half + 15.0), TITLES[2], bold=True)
-    sheet.outline(_rectangle(centre, shape.plate, half), fill=_METAL)
-    sheet.centre_line((x, y - half - 3.0), (x, y + half + 3.0))
+    side, half = shape.blank, shape.length / 2.0
+    sheet.text((x - side, y + half + 15.0), words.flat, bold=True)
+    sheet.outline(_rectangle(centre, side, half), fill=_METAL)
+    if words.half_blank:
+        sheet.centre_line((x, y - half - 3.0), (x, y + half + 3.0))
+        sheet.dimension(
+            (x, y + half),
+            (x - side, y + half),
+            through=(x, y + half + 4.0),
+            along=(-1.0, 0.0),
+            words=words.half_blank,
+        )
     sheet.leader((x, y + half), (x + 3.0, y + half + 6.5), words.bend)
+    for across, along, diameter in shape.holes:
+        sheet.circle((x + across, y + along), diameter / 2.0)
     sheet.dimension(
-        (x, y + half),
-        (x - shape.plate, y + half),
-        through=(x, y + half + 4.0),
-        along=(-1.0, 0.0),
-        words=words.plate,
-    )
-    sheet.dimension(
-        (x + shape.plate, y - half),
-        (x - shape.plate, y - half),
+        (x + side, y - half),
+        (x - side, y - half),
         through=(x, y - half - LEVEL),
         along=(-1.0, 0.0),
         words=words.blank,
     )
     sheet.dimension(
-        (x + shape.plate, y + half),
-        (x + shape.plate, y - half),
-        through=(x + shape.plate + LEVEL, y),
+        (x + side, y + half),
+        (x + side, y - half),
+        through=(x + side + LEVEL, y),
         along=(0.0, -1.0),
         words=words.length,
     )
+    below = y - half - under_blank(shape, words)
+    for row, note in enumerate(words.notes):
+        sheet.text((x - side, below + NOTE * (len(words.notes) - row - 0.5)), note)
+
+
+def under_blank(shape: Shape, words: Words) -> float:
+    """Return how far below the flat sheet its dimensions and notes end, mm."""
+    return max(LEVEL + 4.0, reach(words.length, shape.length) + 1.0) + NOTE * len(words.notes)

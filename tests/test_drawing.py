@@ -13,6 +13,7 @@ from models import Build, Reflectors
 from optim.drafting import millimetres, reach
 from optim.drawing import SHEET, draw_sheet, draw_sketches, scale_for
 from optim.style import text_width
+from optim.views import piece_of
 from tests.picture_checks import assert_readable, words_of
 
 
@@ -78,7 +79,7 @@ def test_any_geometry_is_readable(
 @pytest.mark.parametrize("name", ["narrow", "flat", "tiny", "hall"])
 def test_outlines_are_to_scale(name: str) -> None:
     design = ODD[name]
-    paper = 1e3 / scale_for(design)
+    paper = 1e3 / scale_for(design, Build())
     axes = draw_sheet(design, title="").axes[0]
     assert axes.get_window_extent().width / 100.0 * 25.4 == pytest.approx(SHEET[0])
     assert np.diff(axes.get_xlim()).item() == pytest.approx(SHEET[0])
@@ -88,7 +89,8 @@ def test_outlines_are_to_scale(name: str) -> None:
         return any(np.allclose(box, (width * paper, height * paper)) for box in boxes)
 
     assert drawn(float(design.width[0]), float(design.plate_length[0]))
-    assert drawn(2.0 * float(design.plate_width[0]), float(design.plate_length[0]))
+    piece = piece_of(design, Build())
+    assert drawn(piece.width, piece.length)
     plates = [
         np.stack([ln.get_xdata(), ln.get_ydata()], axis=1)
         for ln in axes.lines
@@ -112,7 +114,7 @@ def test_mass_follows_the_build() -> None:
 def test_stated_scale_is_that_of_the_bar() -> None:
     design = ODD["tiny"]
     texts = _texts(draw_sheet(design, title=""))
-    assert f"scale {1.0 / scale_for(design):g}:1 on A4" in texts
+    assert f"scale {1.0 / scale_for(design, Build()):g}:1 on A4" in texts
 
 
 def test_a_title_full_of_signs_is_shown_as_it_stands() -> None:
@@ -123,7 +125,7 @@ def test_a_title_full_of_signs_is_shown_as_it_stands() -> None:
 
 def test_nothing_that_large_is_drawn() -> None:
     with pytest.raises(ValueError, match="no scale down to 1:"):
-        scale_for(_design(90.0, 1e5, 1e6, 1e6, 1e5, 1.0))
+        scale_for(_design(90.0, 1e5, 1e6, 1e6, 1e5, 1.0), Build())
 
 
 def test_sketches_share_one_scale() -> None:
