@@ -16,7 +16,7 @@ import numpy as np
 from models.conventions import FloatArray
 from models.geometry import Reflectors
 
-__all__ = ["Build", "drag_coefficient", "mass", "wind_load"]
+__all__ = ["AIR_DENSITY", "Build", "drag_coefficient", "mass", "wind_load"]
 
 AIR_DENSITY: Final = 1.225
 """Standard air at sea level, 15 °C, kg/m³ (ICAO standard atmosphere)."""

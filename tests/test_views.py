@@ -6,7 +6,7 @@ import io
 
 import numpy as np
 import pytest
-from ezdxf.entities import LWPolyline
+from ezdxf.entities.lwpolyline import LWPolyline
 from ezdxf.filemanagement import read
 from matplotlib.patches import Circle, Polygon
 
