@@ -26,7 +26,7 @@ __all__ = ["open_doors"]
 
 GENERATIONS: Final = 20
 POPULATION: Final = 24
-PATIENCE: Final = 4
+PATIENCE: Final = 6
 MOST_DOORS: Final = 6
 """Limits looked behind; two at a time they make 15 doors."""
 

@@ -37,7 +37,7 @@ FIRST_SAMPLE: Final = 4
 """Designs in the scout's first generation, as a multiple of the population."""
 
 SCOUT_PATIENCE: Final = 12
-PROVE_PATIENCE: Final = 5
+PROVE_PATIENCE: Final = 8
 """Generations within which a front must move for the search to go on."""
 
 PROVE_GENERATIONS: Final = 30
