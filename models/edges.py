@@ -105,9 +105,12 @@ def soft(zeta: SingleArray) -> WaveArray:
     return hard(zeta) + shed(zeta)
 
 
-def shed(zeta: SingleArray) -> WaveArray:
-    """Return e^{−jπ/4}·e^{−jζ²}/(√π·ζ): the current along an edge that a wave leaves there."""
-    return turn(zeta * zeta) * (np.complex64(_EDGE) / zeta)
+def shed(zeta: SingleArray, weight: SingleArray | float = 1.0) -> WaveArray:
+    """Return e^{−jπ/4}·e^{−jζ²}/(√π·ζ), the current along an edge that a wave leaves, × weight."""
+    out = turn(zeta * zeta)
+    out *= weight / zeta
+    out *= np.complex64(_EDGE)
+    return out
 
 
 def spread(direct: SingleArray, over: SingleArray) -> SingleArray:

@@ -8,6 +8,7 @@ level. Levels of side lobes and masks are relative to the boresight level.
 from __future__ import annotations
 
 from dataclasses import dataclass, fields
+from typing import Final
 
 import numpy as np
 
@@ -15,6 +16,10 @@ from models.conventions import FloatArray, decibels
 from models.pattern import Pattern
 
 __all__ = ["Figures", "Terms", "figures_of_merit", "vswr"]
+
+
+WELL_INSIDE: Final = -60.0
+"""Excess over an envelope that stands for 'not to the point', dB."""
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -198,4 +203,6 @@ def _excess(
     part = checked / step - left
     with np.errstate(invalid="ignore"):
         level = level_db[..., left] * (1.0 - part) + level_db[..., left + 1] * part
-    return np.asarray((level - allowed).max(axis=-1))
+    # Levels are relative to boresight: where 0 dB is allowed, keeping it is no close call.
+    kept = (allowed >= 0.0) & (level <= allowed + 1e-9)
+    return np.asarray(np.where(kept, WELL_INSIDE, level - allowed).max(axis=-1))

@@ -9,6 +9,7 @@ Valid from w, L of about 0.6 λ.
 
 from __future__ import annotations
 
+from functools import cache
 from typing import Final
 
 import numpy as np
@@ -76,15 +77,26 @@ def _node_counts(pairs: FloatArray) -> np.ndarray:
     """Return nodes along s and along half the length, (n, 2) integers."""
     width, half = pairs[:, 2], pairs[:, 3] / 2.0
     # A Gauss sum needs half a node a radian of phase and a few more; coarse steps keep blocks few.
-    along_s = 4.0 * np.ceil((0.6 * width + 8.0) / 4.0)
-    along_z = 2.0 * np.ceil((0.5 * half + 3.0) / 2.0)
+    along_s = 4.0 * np.ceil((0.6 * width + 6.5) / 4.0)
+    along_z = 2.0 * np.ceil((0.5 * half + 2.0) / 2.0)
     return np.stack([along_s, along_z], axis=1).astype(np.intp)
+
+
+@cache
+def _edge_gauss(count: int) -> tuple[FloatArray, FloatArray]:
+    x, weights = roots_jacobi(count, -0.5, 0.0)
+    return x, weights * np.sqrt(1.0 - x) / 2.0
+
+
+@cache
+def _plain_gauss(count: int) -> tuple[FloatArray, FloatArray]:
+    x, weights = np.polynomial.legendre.leggauss(count)
+    return x, weights
 
 
 def _nodes(size: FloatArray, count: int) -> tuple[FloatArray, FloatArray]:
     """Return places in (0, size) and weights, (n, count), for what has a plate edge at `size`."""
-    x, weights = roots_jacobi(count, -0.5, 0.0)
-    weights = weights * np.sqrt(1.0 - x) / 2.0
+    x, weights = _edge_gauss(count)
     return size[:, None] * (1.0 + x) / 2.0, size[:, None] * weights
 
 
@@ -186,7 +198,7 @@ def _sphere_mean(c: Corners, moment_z: WaveArray, moment_s: WaveArray) -> FloatA
     conjugation.
     """
     _, count_s, count_z = moment_z.shape
-    nodes, weights = np.polynomial.legendre.leggauss(count_z)
+    nodes, weights = _plain_gauss(count_z + 1)
     steps = count_s // 2
     phi = ((np.arange(steps) + 0.5) * (np.pi / 2.0 / steps)).astype(np.float32)[:, None]
     s = c.s.swapaxes(1, 2)

@@ -59,6 +59,12 @@ class Corners:
         """Return the first `count` corners, views of the same memory."""
         return Corners(**{name: value[:count] for name, value in vars(self).items()})
 
+    def lit(self) -> list[tuple[int, int]]:
+        """Return the orders j of images and how many corners have them: (j + 1/2)·α < π."""
+        most = int(np.ceil(np.pi / float(self.apex_angle[0, 0, 0])))
+        pairs = [(j, self.count(j + 0.5)) for j in range(most)]
+        return [(j, n) for j, n in pairs if n]
+
     def count(self, orders: float) -> int:
         """Return how many corners have `orders` times the apex angle below π."""
         return int(np.count_nonzero(orders * self.apex_angle < np.pi - 1e-6))
@@ -70,6 +76,7 @@ class _Sources:
     def __init__(self, corners: Corners) -> None:
         self._corners = corners
         self._known: dict[int, tuple[SingleArray, SingleArray, WaveArray]] = {}
+        self._bare: dict[int, WaveArray] = {}
 
     def __call__(self, q: int, count: int) -> tuple[SingleArray, SingleArray, WaveArray]:
         """Return ρ, direct path and H_φ (exact, 1 A) of source q for the first `count` corners."""
@@ -83,6 +90,15 @@ class _Sources:
             self._known[q] = known
         rho, direct, field = known
         return rho[:count], direct[:count], field[:count]
+
+    def bare(self, q: int, count: int) -> tuple[SingleArray, WaveArray]:
+        """Return direct path and H_φ over the dipole's far field in that direction."""
+        _, direct, field = self(q, count)
+        known = self._bare.get(q)
+        if known is None or known.shape[0] < count:
+            c = self._corners.first(count)
+            known = self._bare[q] = field / _lobe(c, c.z / direct)
+        return direct, known[:count]
 
 
 def magnetic_field(rho: SingleArray, z: SingleArray, length: SingleArray) -> WaveArray:
@@ -100,21 +116,19 @@ def magnetic_field(rho: SingleArray, z: SingleArray, length: SingleArray) -> Wav
 def currents(corners: Corners) -> tuple[WaveArray, WaveArray]:
     """Return the current densities along z and along s at the points, (n, n_s, n_z)."""
     sources = _Sources(corners)
-    along_z, along_s, at_ends = _apex(corners)
+    along_z, along_s, at_ends = _image(corners, sources, 0)
+    z_part, s_part = _apex(corners)
+    along_z += z_part
+    along_s += s_part
     orders = int(np.ceil(np.pi / float(corners.apex_angle[0, 0, 0])))
-    ends_of_first: WaveArray = at_ends
-    for j in range(orders):
-        n = corners.count(j + 0.5)
-        if n:
-            z_part, s_part, at_ends = _image(corners.first(n), sources, j)
-            along_z[:n] += z_part
-            along_s[:n] += s_part
-            if j == 0:
-                ends_of_first = at_ends
+    for j, n in corners.lit()[1:]:
+        z_part, s_part, _ = _image(corners.first(n), sources, j)
+        along_z[:n] += z_part
+        along_s[:n] += s_part
     for m in range(1, 2 * orders):
-        n = corners.count(m / 1.5)
+        n = corners.count(m / 1.25)
         if n:
-            along_z[:n] += _rim(corners.first(n), sources, m) * ends_of_first[:n]
+            along_z[:n] += _rim(corners.first(n), sources, m) * at_ends[:n]
         n = corners.count(m)
         if n:
             along_z[:n] += _ends(corners.first(n), sources, m)
@@ -141,8 +155,8 @@ def _image(c: Corners, sources: _Sources, j: int) -> tuple[WaveArray, WaveArray,
     return optics * at_rim * at_ends, optics * oblique * hard(_root(2.0 * (w - c.s))), at_ends
 
 
-def _apex(c: Corners) -> tuple[WaveArray, WaveArray, WaveArray]:
-    """Return the current of the wave the apex diffracts, and the factor of the ends."""
+def _apex(c: Corners) -> tuple[WaveArray, WaveArray]:
+    """Return the current of the wave the apex diffracts, ends of our plate included."""
     s, z, w, spacing = c.s, c.z, c.plate_width, c.spacing
     p = np.pi / c.apex_angle
     cosine2 = np.cos(np.pi * p) ** 2
@@ -159,8 +173,8 @@ def _apex(c: Corners) -> tuple[WaveArray, WaveArray, WaveArray]:
     direct = np.sqrt((spacing + s) ** 2 + z * z)
     over = np.sqrt((spacing + 2.0 * w - s) ** 2 + z * z)
     at_ends, oblique = _own_ends(c, direct, -spacing, np.zeros_like(spacing))
-    along_z = optics * soft(_root(over - direct)) * at_ends
-    return along_z, optics * oblique * hard(_root(2.0 * (w - s))), at_ends
+    at_rim = soft(_root(over - direct))
+    return optics * at_rim * at_ends, optics * oblique * hard(_root(2.0 * (w - s)))
 
 
 def _own_ends(
@@ -225,92 +239,86 @@ def _extent(
 
 def _rim(c: Corners, sources: _Sources, m: int) -> WaveArray:
     """Return the current by the rim seen at m·α from our plate, lit by all images, without ends."""
-    s, z, w, spacing = c.s, c.z, c.plate_width, c.spacing
+    s, z, w = c.s, c.z, c.plate_width
     seen = m * c.apex_angle
     after = np.sqrt((s - w * np.cos(seen)) ** 2 + (w * np.sin(seen)) ** 2)
     facing = -w * np.sin(seen) / after
-    shape = np.broadcast_shapes(s.shape, z.shape)
-    total = np.zeros(shape, dtype=np.result_type(s, 1j))
-    steepness: SingleArray = np.zeros(0, dtype=np.float32)
-    for j in range(int(np.ceil(np.pi / float(c.apex_angle[0, 0, 0])))):
-        n = c.count(j + 0.5)
-        if not n:
-            break
-        turned = (j + 0.5) * c.apex_angle[:n]
-        ax, an = spacing[:n] * np.cos(turned), spacing[:n] * np.sin(turned)
-        path = np.sqrt((w[:n] - ax) ** 2 + an * an) + after[:n]
-        over = np.sqrt(path * path + z[:n] * z[:n])
-        if j == 0:
-            steepness = path / over
+    total = np.zeros(np.broadcast_shapes(s.shape, z.shape), dtype=np.complex64)
+    for j, n in c.lit():
+        b = c.first(n)
+        turned = (j + 0.5) * b.apex_angle
+        ax, an = b.spacing * np.cos(turned), b.spacing * np.sin(turned)
+        path = np.sqrt((b.plate_width - ax) ** 2 + an * an) + after[:n]
+        over = np.sqrt(path * path + b.z * b.z)
+        # Reflected beyond the rim there is no such ray: its tail turns round.
+        height = np.maximum(b.s * np.sin(seen[:n]), 0.0) + an + _TINY
+        bounce = ax + (b.s * np.cos(seen[:n]) - ax) * an / height
+        past = np.copysign(np.float32(1.0), b.plate_width - bounce)
         for sense in (-1, 1):  # the incident, the reflected side of the rim's field
             q = 2 * m + sense * (2 * j + 1)
             rho, direct, field = sources(abs(q), n)
             zeta = _root(over - direct)
-            slope = -spacing[:n] * np.sin(0.5 * q * c.apex_angle[:n]) / rho
-            bend = 0.5 * shed(zeta)
-            bend = bend * (facing[:n] * (direct * path) / (rho * over) - slope)
-            missing = tail(zeta)
-            if sense > 0:
-                # Reflected beyond the rim there is no such ray: the tail turns round.
-                height = np.maximum(s[:n] * np.sin(seen[:n]), 0.0) + an + _TINY
-                bounce = ax + (s[:n] * np.cos(seen[:n]) - ax) * an / height
-                missing = 1.0 - seen_part(zeta, w[:n] - bounce)
-                bend *= np.copysign(1.0, w[:n] - bounce)
-            part = field * (slope * missing + bend)
-            total[:n] += part * ((2.0 * sense * _sign(j + m + 1)) * spread(direct, over))
+            slope = -b.spacing * np.sin(0.5 * q * b.apex_angle) / rho
+            bend = 0.5 * (facing[:n] * (direct * path) / (rho * over) - slope)
+            if sense < 0:
+                part = tail(zeta) * slope + shed(zeta, bend)
+            else:
+                part = seen_part(zeta, -past) * slope + shed(zeta, bend * past)
+            part *= field
+            part *= (2.0 * sense * _sign(j + m + 1)) * spread(direct, over)
+            total[:n] += part
+    steepness = _steepness(c, after)
     across = np.sqrt(2.0 * w * w * (1.0 - np.cos(seen)))
-    own_rim = soft(_root(steepness * (across + w - s - after)))
+    total *= soft(_root(steepness * (across + w - s - after)))
     # Past the line of our plate the rim fades behind the apex.
-    fade = np.clip(3.0 - 2.0 * seen / np.pi, 0.0, 1.0) ** 2
-    view = seen_part(_root(steepness * (w + s - after)), np.pi - seen)
-    return np.asarray(total * own_rim * (view * fade))
+    fade = np.clip(5.0 - 4.0 * seen / np.pi, 0.0, 1.0) ** 2
+    total *= seen_part(_root(steepness * (w + s - after)), np.pi - seen) * fade
+    return total
+
+
+def _steepness(c: Corners, after: SingleArray) -> SingleArray:
+    """Return the cosine of the climb of the ray from dipole by rim to point, `after` past the rim."""
+    half = 0.5 * c.apex_angle
+    path = after + np.sqrt(
+        (c.plate_width - c.spacing * np.cos(half)) ** 2 + (c.spacing * np.sin(half)) ** 2
+    )
+    return np.asarray(path / np.sqrt(path * path + c.z * c.z))
 
 
 def _ends(c: Corners, sources: _Sources, m: int) -> WaveArray:
     """Return the current by the ends of the plate seen at m·α from ours, lit by all images."""
-    s, z, spacing = c.s, c.z, c.spacing
-    seen = m * c.apex_angle
-    half = 0.5 * c.plate_length
-    px, pn = s * np.cos(seen), s * np.sin(seen)  # the point in that plate's frame
-    sine, cosine = np.sin(seen), np.cos(seen)
-    shape = np.broadcast_shapes(s.shape, z.shape)
-    total = np.zeros(shape, dtype=np.result_type(s, 1j))
-    for j in range(int(np.ceil(np.pi / float(c.apex_angle[0, 0, 0])))):
-        n = c.count(j + 0.5)
-        if not n:
-            break
+    total = np.zeros(np.broadcast_shapes(c.s.shape, c.z.shape), dtype=np.complex64)
+    for j, n in c.lit():
         b = c.first(n)
-        turned = (j + 0.5) * b.apex_angle
-        ax, an = spacing[:n] * np.cos(turned), spacing[:n] * np.sin(turned)
-        dx = px[:n] - ax
-        before = np.sqrt(an * an + half[:n] * half[:n])
-        lit = []
-        for sense in (1, -1):  # incident and reflected side: image above and below that plate
-            _, direct, field = sources(abs(2 * m - sense * (2 * j + 1)), n)
-            lit.append((sense, direct, field / _lobe(b, b.z / direct)))
-        for end in (half[:n], -half[:n]):
+        seen, turned = m * b.apex_angle, (j + 0.5) * b.apex_angle
+        px, pn = b.s * np.cos(seen), b.s * np.sin(seen)  # the point in that plate's frame
+        ax, an = b.spacing * np.cos(turned), b.spacing * np.sin(turned)
+        dx, half = px - ax, 0.5 * b.plate_length
+        before = np.sqrt(an * an + half * half)
+        # Incident and reflected side: image above and below that plate.
+        lit = [sources.bare(abs(2 * m - sense * (2 * j + 1)), n) for sense in (1, -1)]
+        for end in (half, -half):
             beyond = b.z - end
-            after = np.sqrt(pn[:n] * pn[:n] + beyond * beyond)
+            after = np.sqrt(pn * pn + beyond * beyond)
             path = before + after
             over = np.sqrt(path * path + dx * dx)
             on_edge = dx * before / path
-            rho_edge = np.sqrt(on_edge * on_edge + an * an)
-            to_edge = np.sqrt(rho_edge * rho_edge + half[:n] * half[:n])
-            # H and E/η along that edge of the diffracted wave; then H square to that plate.
-            h_edge: WaveArray | float = 0.0
-            e_edge: WaveArray | float = 0.0
-            for sense, direct, field in lit:
-                wave = field * tail(_root(over - direct)) * spread(direct, over)
-                h_edge, e_edge = h_edge - wave, e_edge - sense * wave
-            h_along = h_edge * (an / rho_edge)
-            h_square = h_along * (dx / path * pn[:n] / after)
-            h_square = h_square + e_edge * (
-                end * on_edge / (to_edge * rho_edge) * (over / path) * (beyond / after)
-            )
-            part = cosine[:n] * h_along - sine[:n] * h_square
-            stopped = hard(_root(path / over * (np.abs(pn[:n]) + np.abs(beyond) - after)))
-            strength = _lobe(b, half[:n] / to_edge) * _extent(
-                b, ax, before, ax + on_edge, over, (px[:n], after)
-            )
-            total[:n] += part * strength * stopped * (2.0 * _sign(j + m + 1))
-    return total * soft(_root(2.0 * (c.plate_width - s)))
+            rho2 = on_edge * on_edge + an * an
+            to_edge = np.sqrt(rho2 + half * half)
+            # Along that edge the diffracted wave has H of (an/ρ) and E/η of (end·on_edge/(ρ·R)),
+            # which turns sign with the image; square to the plate H follows from both. Our plate
+            # takes cosine of the one and sine of the other.
+            shared = (-2.0 * _sign(j + m + 1)) * _lobe(b, half / to_edge) / np.sqrt(rho2)
+            by_h = an * (np.cos(seen) - np.sin(seen) * (dx / path) * (pn / after)) * shared
+            by_e = end * on_edge * over * beyond / (to_edge * path * after)
+            by_e = by_e * (-np.sin(seen) * shared)
+            part = 0.0
+            for (direct, field), weight in zip(lit, (by_h + by_e, by_h - by_e), strict=True):
+                wave = tail(_root(over - direct))
+                wave *= field
+                wave *= weight * spread(direct, over)
+                part = part + wave
+            part *= _extent(b, ax, before, ax + on_edge, over, (px, after))
+            part *= hard(_root(path / over * (np.abs(pn) + np.abs(beyond) - after)))
+            total[:n] += part
+    return total * soft(_root(2.0 * (c.plate_width - c.s)))
