@@ -277,7 +277,7 @@ def _rim(c: Corners, sources: _Sources, m: int) -> WaveArray:
 
 
 def _steepness(c: Corners, after: SingleArray) -> SingleArray:
-    """Return the cosine of the climb of the ray from dipole by rim to point, `after` past the rim."""
+    """Return path over length of the ray from the dipole by the rim, `after` past it."""
     half = 0.5 * c.apex_angle
     path = after + np.sqrt(
         (c.plate_width - c.spacing * np.cos(half)) ** 2 + (c.spacing * np.sin(half)) ** 2
@@ -312,12 +312,13 @@ def _ends(c: Corners, sources: _Sources, m: int) -> WaveArray:
             by_h = an * (np.cos(seen) - np.sin(seen) * (dx / path) * (pn / after)) * shared
             by_e = end * on_edge * over * beyond / (to_edge * path * after)
             by_e = by_e * (-np.sin(seen) * shared)
-            part = 0.0
+            waves = []
             for (direct, field), weight in zip(lit, (by_h + by_e, by_h - by_e), strict=True):
                 wave = tail(_root(over - direct))
                 wave *= field
                 wave *= weight * spread(direct, over)
-                part = part + wave
+                waves.append(wave)
+            part = waves[0] + waves[1]
             part *= _extent(b, ax, before, ax + on_edge, over, (px, after))
             part *= hard(_root(path / over * (np.abs(pn) + np.abs(beyond) - after)))
             total[:n] += part
