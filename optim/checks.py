@@ -156,6 +156,11 @@ def _goals(spec: SpecFile) -> Iterator[Complaint]:
             if name in seen:
                 yield f"goals.{key}[{place}]", shown(name), "each goal once"
             seen.add(name)
+    wanted = {"goals.maximise": "yield" in seen, "tolerance.min_yield": spec.tolerance.min_yield}
+    if any(wanted.values()) and not any(getattr(spec.tolerance, k) for k in FILE_KEYS.values()):
+        key = next(key for key, asked in wanted.items() if asked)
+        allowed = f"with a ± above 0 in [tolerance]: {', '.join(FILE_KEYS.values())}"
+        yield key, "a yield without a tolerance", allowed
 
 
 def _build(build: BuildTable, wavelength: float) -> Iterator[Complaint]:

@@ -21,6 +21,9 @@ __all__ = ["GUARDS", "SIZES", "Judge"]
 MISSING: Final = 1000.0
 """A figure that is missing or infinite counts as this many scales beyond its limit."""
 
+LEAST_REACH: Final = 1e-3
+"""Steps of margin that tolerances take at least, where they are a measure of margins."""
+
 GREATEST_DIP_DB: Final = 0.5
 """Beam peak above boresight from which a beam counts as split, dB."""
 
@@ -72,6 +75,9 @@ class Judge:
     Parameters
     ----------
     requirements : Requirements
+    reach : (n_limits,), optional
+        What tolerances take of each margin, in its steps; a step each if left out. The goal yield
+        is served by the smallest margin in these measures.
 
     Attributes
     ----------
@@ -81,8 +87,9 @@ class Judge:
         The columns of `violations`: the limits, then `GUARDS`.
     """
 
-    def __init__(self, requirements: Requirements) -> None:
+    def __init__(self, requirements: Requirements, reach: FloatArray | None = None) -> None:
         self.requirements = requirements
+        self._reach = np.ones(len(requirements.limits)) if reach is None else reach
         self.limits = requirements.limits
         self.constraints = (*requirements.limits, *GUARDS)
 
@@ -122,12 +129,16 @@ class Judge:
         """Return what is to be made small, (n, n_goals), worst over the band, finite.
 
         Sizes in SI, figures in their unit; goals to maximise change sign. A figure that is missing
-        counts as `MISSING`.
+        counts as `MISSING`. Yield is stood for by the smallest margin.
         """
         sizes = self.sizes(reflectors)
-        return np.stack(
-            [_objective(goal, sizes, figures) for goal in self.requirements.goals], axis=1
-        )
+        columns = [
+            self._tightest(reflectors, figures)
+            if goal.name == "yield"
+            else _objective(goal, sizes, figures)
+            for goal in self.requirements.goals
+        ]
+        return np.stack(columns, axis=1)
 
     def worst(self, figures: Figures) -> dict[str, FloatArray]:
         """Return every figure at its worst over the band, each (n,); NaN where it is missing.
@@ -147,6 +158,11 @@ class Judge:
             else:
                 found[name] = values.max(axis=1)
         return found
+
+    def _tightest(self, reflectors: Reflectors, figures: Figures) -> FloatArray:
+        misses = self.violations(reflectors, figures)[:, : len(self.limits)]
+        measured = misses / np.maximum(self._reach, LEAST_REACH)
+        return np.asarray(measured.max(axis=1, initial=-MISSING))
 
     def _closeness(self, name: str, values: FloatArray) -> FloatArray:
         margins = [_signed(limit, values) for limit in self.limits if limit.figure == name]

@@ -26,6 +26,8 @@ from optim.tables import (
     sizes,
     summary_json,
 )
+from optim.tolerance import Spread
+from optim.tolerance_table import spread_object, spread_rows, spread_words
 
 __all__ = ["Result"]
 
@@ -83,11 +85,14 @@ class Result:
         group = "recommended" if self.met else "nearest"
         (folder / group).mkdir(exist_ok=True)
         judged, rows = self.shown()
-        entries = []
+        spreads = self._spreads()
+        entries: list[dict[str, Any]] = []
         for name, row in rows.items():
             file = f"{group}/{name.removeprefix('nearest_')}.toml"
             write_design(folder / file, self._design(judged, row, name))
             entries.append({"role": name, "design_file": file, **self._numbers(judged, row)})
+            if name in spreads:
+                entries[-1]["tolerance"] = spread_object(spreads[name])
         labels = [limit.label for limit in self.requirements.limits]
         binding = binding_limits(judged[list(rows.values())])
         relaxed = self.found.relaxed
@@ -95,7 +100,8 @@ class Result:
             "title": self.requirements.title,
             "status": "met" if self.met else "not met",
             "recommended": entries if self.met else [],
-            "binding": [labels[column] for column in binding],
+            "binding": [labels[column] for column in binding]
+            + [relaxed["requirement"] for relaxed in self._relaxed_yield()],
             "nearest": [] if self.met else entries,
             "relaxations": [
                 {
@@ -106,7 +112,8 @@ class Result:
                     **self._numbers(relaxed, row),
                 }
                 for row in range(len(relaxed))
-            ],
+            ]
+            + [{"limits": [relaxed]} for relaxed in self._relaxed_yield()],
             "designs_on_front": len(front),
             "decided_by": self.found.model,
             "evaluations": self.found.evaluations,
@@ -117,7 +124,27 @@ class Result:
 
     def text(self) -> str:
         """Return the outcome as a page of plain text."""
-        return "\n".join([*self._verdict(), "", *self._table(), *self._relaxations()])
+        lines = [*self._verdict(), "", *self._table(), *self._relaxations()]
+        if spreads := self._spreads():
+            lines += ["", *spread_words(spreads, self.found.model)]
+        return "\n".join(lines)
+
+    def _spreads(self) -> dict[str, Spread]:
+        """Return the spreads of the designs shown, by their names."""
+        judged, rows = self.shown()
+        found = self.found.spreads
+        known = {name: found.get(judged.keys[row]) for name, row in rows.items()}
+        return {name: spread for name, spread in known.items() if spread is not None}
+
+    def _relaxed_yield(self) -> list[dict[str, Any]]:
+        """Return by how much to relax the yield, if it alone is what the nearest designs miss."""
+        spreads = self._spreads()
+        if self.met or not spreads:
+            return []
+        best = max(spread.expected for spread in spreads.values())
+        reached = float(np.floor(1e3 * best) / 1e3)
+        asked = self.requirements.min_yield
+        return [{"requirement": "min_yield", "from": asked, "to": reached}]
 
     def _reflectors(self, judged: Judged) -> Reflectors:
         return self.space.reflectors(judged.designs)
@@ -175,6 +202,8 @@ class Result:
             sign = 1.0 if goal.sense == "min" else -1.0
             found = sign * judged.objectives[list(rows.values()), goal_column]
             lines.append([f"goal {goal.name}", goal.sense, *(f"{value:.4g}" for value in found)])
+        if spreads := self._spreads():
+            lines += spread_rows(spreads, self.requirements)
         return _aligned(lines)
 
     def _relaxations(self) -> Iterator[str]:
@@ -182,7 +211,10 @@ class Result:
             return
         yield ""
         relaxed = self.found.relaxed
-        if not len(relaxed):
+        short = self._relaxed_yield()
+        for value in short:
+            yield f"Relax min_yield from {value['from']:g} to {value['to']:g} and a design exists."
+        if not len(relaxed) and not short:
             yield "No relaxing of limits alone lets one of the designs found in."
         for row in range(len(relaxed)):
             words = " and ".join(

@@ -27,8 +27,11 @@ from optim.progress import Progress
 from optim.referee import columns
 from optim.requirements import Requirements, read_requirements
 from optim.result import Result
+from optim.robust import bred, tolerated
 from optim.search import scouted, search
 from optim.space import DesignSpace
+from optim.tolerance import STAGE
+from optim.tolerance import columns as yield_columns
 
 __all__ = ["JOURNAL", "Options", "run"]
 
@@ -170,6 +173,7 @@ def unjudged(requirements: Requirements, space: DesignSpace) -> Iterator[Fault]:
 def header_of(requirements: Requirements, space: DesignSpace) -> Header:
     """Return the header of the journal of a run."""
     settings = requirements.run
+    requirements = bred(requirements)
     asked = Judge(requirements)
     stages = {"scout": asked, "check": asked}
     if settings.prove:
@@ -184,5 +188,6 @@ def header_of(requirements: Requirements, space: DesignSpace) -> Header:
         scout=settings.scout,
         prove=settings.prove or "none",
         versions={name: version(name) for name in LIBRARIES},
-        columns={stage: columns(rules) for stage, rules in stages.items()},
+        columns={stage: columns(rules) for stage, rules in stages.items()}
+        | ({STAGE: yield_columns(requirements)} if tolerated(requirements) else {}),
     )

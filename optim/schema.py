@@ -35,7 +35,7 @@ GOALS_SMALL: Final = (
     "vswr",
 )
 """Goals that only make sense as small as can be."""
-GOALS_LARGE: Final = ("gain", "realized_gain", "front_to_back")
+GOALS_LARGE: Final = ("gain", "realized_gain", "front_to_back", "yield")
 """Goals that only make sense as large as can be."""
 GOALS_EITHER: Final = ("beamwidth_h", "beamwidth_e")
 """Goals that make sense both ways."""
@@ -179,9 +179,7 @@ class GoalsTable(Table):
     """`[goals]`."""
 
     minimise: list[Annotated[str, choice(*GOALS_SMALL, *GOALS_EITHER)]] | None = None
-    maximise: list[Annotated[str, choice(*GOALS_LARGE, *GOALS_EITHER, not_yet="yield")]] | None = (
-        None
-    )
+    maximise: list[Annotated[str, choice(*GOALS_LARGE, *GOALS_EITHER)]] | None = None
 
 
 class RunTable(Table):

@@ -10,7 +10,7 @@ in the way is taken down in turn, to see what lies behind it.
 from __future__ import annotations
 
 from collections.abc import Callable
-from dataclasses import dataclass, replace
+from dataclasses import dataclass, field, replace
 from typing import Final
 
 import numpy as np
@@ -29,7 +29,9 @@ from optim.progress import Progress
 from optim.recommend import front_rows, nearest_rows, relaxation_rows, sorted_rows
 from optim.referee import Referee
 from optim.requirements import Goal, Requirements
+from optim.robust import bred, decide, reach, tolerated
 from optim.space import DesignSpace
+from optim.tolerance import Builds, Spread
 
 __all__ = ["Found", "scouted", "search"]
 
@@ -65,6 +67,9 @@ class Found:
         That decided.
     evaluations : dict
         Designs judged by each model.
+    spreads : dict
+        How antennas built from a design spread, by the bytes of its row; where tolerances are
+        given, of every design that is recommended, or nearest for want of yield.
     """
 
     front: Judged
@@ -72,6 +77,7 @@ class Found:
     relaxed: Judged
     model: str
     evaluations: dict[str, int]
+    spreads: dict[bytes, Spread] = field(default_factory=dict)
 
 
 def search(
@@ -96,6 +102,7 @@ def search(
     progress : Progress
         Is told after every generation.
     """
+    asked, requirements = requirements, bred(requirements)
     run, judge = requirements.run, Judge(requirements)
     rng = np.random.default_rng(run.seed)
     coarse, fine = requirements.band.frequencies(), requirements.band.refined().frequencies()
@@ -115,7 +122,12 @@ def search(
         rng=rng,
         progress=progress,
     )
+    builds = Builds(asked, space, decider, journal) if tolerated(asked) else None
     if prove is not None:
+        if builds is not None and "yield" in {goal.name for goal in requirements.goals}:
+            rules = Judge(requirements, reach(scouting.archive.all, builds))
+            deciding = Referee("prove", space, rules, prove, coarse, journal)
+            checking = Referee("check", space, rules, prove, fine, journal)
         evolve(
             deciding,
             about_the_limits(scouting.archive, run.population),
@@ -137,12 +149,19 @@ def search(
     evaluations: dict[str, int] = {}
     for stage in stages.values():
         evaluations[stage.model] = evaluations.get(stage.model, 0) + len(stage.archive)
+    spreads: dict[bytes, Spread] = {}
+    if builds is not None:
+        front, nearest, relaxed, spreads = decide(
+            asked, space, builds, front=front, nearest=nearest, relaxed=relaxed
+        )
+        evaluations[decider.model] += builds.solves
     return Found(
         front=front[sorted_rows(front)],
         nearest=nearest,
         relaxed=relaxed,
         model=decider.model,
         evaluations=evaluations,
+        spreads=spreads,
     )
 
 

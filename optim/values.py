@@ -98,17 +98,12 @@ def mask(value: object) -> tuple[tuple[float, float], ...]:
     return tuple(points)
 
 
-def choice(*names: str, not_yet: str = "") -> BeforeValidator:
-    """Allow one of `names`; a near miss is told which one was probably meant.
-
-    `not_yet` is a name that will be allowed one day and is refused in words until then.
-    """
+def choice(*names: str) -> BeforeValidator:
+    """Allow one of `names`; a near miss is told which one was probably meant."""
 
     def check(value: object) -> str:
         if isinstance(value, str) and value in names:
             return value
-        if not_yet and value == not_yet:
-            _refuse(f"{not_yet} is not offered as a goal yet; one of " + ", ".join(names))
         _refuse("; ".join([*near_miss(value, names), "one of " + ", ".join(names)]))
 
     return BeforeValidator(check)

@@ -19,6 +19,7 @@ TESTED_ELSEWHERE = {
     "optim/faults.py": "what test_requirements.py and test_designfile.py refuse",
     "optim/overview.py": "the text that test_cli.py reads",
     "optim/schema.py": "what test_requirements.py and test_designfile.py read",
+    "optim/tolerance_table.py": "rows and object that test_robust.py reads",
     "optim/units.py": "round trips in test_designfile.py",
     "optim/values.py": "what test_requirements.py refuses",
 }

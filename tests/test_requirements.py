@@ -301,9 +301,13 @@ BROKEN = {
         with_lines(goals='minimise = ["mass", "mass"]'),
         ["goals.minimise[1]", "each goal once"],
     ),
-    "goal of later": (
+    "yield without a tolerance": (
         with_lines(goals='maximise = ["yield"]'),
-        ["goals.maximise[0]", "not offered as a goal yet"],
+        ["goals.maximise", "[tolerance]", "spacing_mm"],
+    ),
+    "least yield of nothing that deviates": (
+        with_lines(tolerance="spacing_mm = 0\nmin_yield = 0.9"),
+        ["tolerance.min_yield", "± above 0"],
     ),
     "no goal": (with_lines(goals="minimise = []"), ["goals", "at least one"]),
     "goals as text": (with_lines(goals='minimise = "mass"'), ["goals.minimise", "a list"]),

@@ -30,7 +30,8 @@ def result(folder: Path, **found: Judged) -> Result:
     none = Judged.none(5, SIZES)
     parts = {"front": none, "nearest": none, "relaxed": none, **found}
     space = DesignSpace.from_requirements(requirements)
-    return Result(requirements, space, Found(model="image", evaluations={"image": 9}, **parts))
+    outcome = Found(**parts, model="image", evaluations={"image": 9}, spreads={})
+    return Result(requirements, space, outcome)
 
 
 def test_met_in_words(tmp_path: Path) -> None:
