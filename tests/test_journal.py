@@ -55,14 +55,14 @@ def test_gives_back_what_it_took_then_runs_out(tmp_path: Path) -> None:
 
 
 @given(
-    numbers=arrays(np.float64, (3, 4), elements=st.floats(allow_nan=False)),
+    numbers=arrays(np.float64, (3, 4), elements=st.floats()),
 )
 @settings(derandomize=True, max_examples=50, deadline=None)
 def test_every_float_survives(
     numbers: FloatArray, tmp_path_factory: pytest.TempPathFactory
 ) -> None:
     path = tmp_path_factory.mktemp("floats") / "journal.jsonl"
-    designs = np.abs(numbers)
+    designs = np.arange(6.0).reshape(3, 2)
     fill(path, [("scout", designs, numbers)])
     with Journal(path, HEADER, resume=True) as journal:
         replayed = journal.replay("scout", designs)
@@ -135,6 +135,25 @@ def test_refuses_damage_that_is_not_at_the_end(tmp_path: Path) -> None:
         Journal(path, HEADER, resume=True)
 
 
+@pytest.mark.parametrize(
+    ("old", "new"),
+    [
+        ('"numbers":"', '"numbers":"*'),
+        ('"designs"', '"other"'),
+        ('"numbers":"', '"numbers":7,"x":"'),
+    ],
+)
+def test_refuses_a_line_that_is_no_batch(tmp_path: Path, old: str, new: str) -> None:
+    path = tmp_path / "journal.jsonl"
+    fill(path, BATCHES)
+    path.write_text(path.read_text().replace(old, new, 1))
+    with (
+        Journal(path, HEADER, resume=True) as journal,
+        pytest.raises(JournalError, match="line 2 is damaged"),
+    ):
+        journal.replay(*BATCHES[0][:2])
+
+
 def test_refuses_a_batch_that_was_not_asked_for(tmp_path: Path) -> None:
     path = tmp_path / "journal.jsonl"
     fill(path, BATCHES)
@@ -164,7 +183,7 @@ def test_unwritable_place_and_full_disk_are_told(tmp_path: Path) -> None:
         "import signal; signal.signal(signal.SIGXFSZ, signal.SIG_IGN)\n"
         "from optim.journal import *\n"
         "header = read_header(Path(sys.argv[1]))\n"
-        "resource.setrlimit(resource.RLIMIT_FSIZE, (2000, 2000))\n"
+        "resource.setrlimit(resource.RLIMIT_FSIZE, (1500, 1500))\n"
         "with Journal(Path(sys.argv[1]), header, resume=True) as journal:\n"
         "    try: journal.append('scout', np.ones((100, 5)), np.ones((100, 5)))\n"
         "    except JournalError as error: print(error)\n"
