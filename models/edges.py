@@ -25,6 +25,7 @@ __all__ = [
     "SingleArray",
     "WaveArray",
     "hard",
+    "seen_part",
     "shed",
     "soft",
     "spread",

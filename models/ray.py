@@ -113,19 +113,17 @@ def _solve(
         plate_width=_single(width),
         plate_length=_single(length),
         dipole_length=_single(dipole),
-        s=s.astype(np.float32)[:, :, None],
-        z=z.astype(np.float32)[:, None, :],
+        s=_single(s.T[:, None, :]),
+        z=_single(z.T[None, :, :]),
     )
-    along_z, along_s = currents(corners)
-    weight = (weight_s[:, :, None] * weight_z[:, None, :]).astype(np.float32)
+    along_z, along_s = (np.ascontiguousarray(np.moveaxis(j, 2, 0)) for j in currents(corners))
+    weight = _single(weight_s[:, :, None] * weight_z[:, None, :])
     moment_z, moment_s = along_z * weight, along_s * weight
     h_field, e_field = _cuts(corners, moment_z, moment_s)
     power = _sphere_mean(corners, moment_z, moment_s)
     # Reaction on the dipole: both plates, both halves; the dipole's field is that for 1 A.
-    distance = np.sqrt(
-        (s - (spacing * np.cos(alpha / 2.0))[:, None]) ** 2
-        + ((spacing * np.sin(alpha / 2.0))[:, None]) ** 2
-    )
+    half = alpha[:, None] / 2.0
+    distance = np.hypot(s - spacing[:, None] * np.cos(half), spacing[:, None] * np.sin(half))
     field = near_field(1.0, dipole[:, None, None], distance[:, :, None], z[:, None, :])
     reaction = mutual_impedance(1.0, dipole, diameter / 2.0)
     reaction -= 4.0 * (field * moment_z).sum(axis=(1, 2))
@@ -144,51 +142,49 @@ def _solve(
     )
 
 
-def _single(column: FloatArray) -> SingleArray:
-    return np.asarray(column, dtype=np.float32)[:, None, None]
+def _single(array: FloatArray) -> SingleArray:
+    return np.ascontiguousarray(array, dtype=np.float32)
 
 
 def _cuts(
     c: Corners, moment_z: WaveArray, moment_s: WaveArray
 ) -> tuple[ComplexArray, ComplexArray]:
-    """Return f on the H- and the E-plane cut, (n, n_angle) each, of weighed currents.
-
-    Turning an angle ψ into π − ψ conjugates every phase of the plates: half the angles do.
-    """
-    half_count = CUT_ANGLES.size // 2 + 1
+    """Return f on the H- and the E-plane cut, (n, n_angle) each, of moments (n, n_s, n_z)."""
     angles = CUT_ANGLES.astype(np.float32)
-    psi = angles[:half_count, None]
-    half, spacing, length = 0.5 * c.apex_angle, c.spacing[:, :, 0], c.dipole_length[:, :, 0]
-    s, z = c.s.swapaxes(1, 2), c.z
-    toward = turn(-s * np.cos(psi - half)) + turn(-s * np.cos(psi + half))
-    h_plates = _both(toward, moment_z.sum(axis=2)[:, :, None])[..., 0]
+    psi = angles[: angles.size // 2 + 1]
+    half, spacing, length = (
+        0.5 * c.apex_angle[:, None],
+        c.spacing[:, None],
+        c.dipole_length[:, None],
+    )
+    s, z = c.s[:, 0].T[:, :, None], c.z[0].T[:, :, None]
+    toward = turn(-s * np.cos(psi - half)[:, None]) + turn(-s * np.cos(psi + half)[:, None])
+    h_plates = _all_round(moment_z.sum(axis=2)[:, None, :], toward)[:, 0]
     ahead = turn(-spacing * np.cos(angles))
     h_field = far_field(1.0, length, 1.0, 0.0) * ahead + h_plates
     # E-plane: 2·½·2 for both plates, the factor of a current, both halves.
-    tilt = turn(-s * (np.cos(psi) * np.cos(half)))
-    height = z * np.sin(psi)
-    mirror = np.concatenate([np.arange(half_count), np.arange(half_count - 2, -1, -1)])
-    even = (_both(tilt, moment_z) * np.cos(height)[:, mirror]).sum(axis=-1)
-    odd = (_both(tilt, moment_s) * np.sin(height)[:, mirror]).sum(axis=-1)
-    cosine_x, cosine = np.cos(CUT_ANGLES), np.sin(CUT_ANGLES)
-    sine = np.abs(cosine_x)
-    facing = np.where(cosine_x >= 0.0, 1.0, -1.0)
-    e_plates = 2.0 * sine * even - 2j * (cosine * facing) * np.cos(half[:, :, 0]) * odd
+    tilt = turn(-s * (np.cos(psi) * np.cos(half))[:, None])
+    height = z * np.sin(angles)
+    even = (_all_round(moment_z.swapaxes(1, 2), tilt) * np.cos(height)).sum(axis=1)
+    odd = (_all_round(moment_s.swapaxes(1, 2), tilt) * np.sin(height)).sum(axis=1)
+    forward, cosine = np.cos(CUT_ANGLES), np.sin(CUT_ANGLES)
+    sine, facing = np.abs(forward), np.where(forward >= 0.0, 1.0, -1.0)
+    e_plates = 2.0 * sine * even - 2j * (cosine * facing) * np.cos(half) * odd
     e_field = far_field(1.0, length, sine, cosine) * ahead + e_plates
     return np.asarray(h_field, dtype=np.complex128), np.asarray(e_field, dtype=np.complex128)
 
 
-def _turned(phases: WaveArray, moments: WaveArray) -> WaveArray:
-    """Return phases @ moments and phases* @ moments, stacked; the second serves π − ψ."""
-    both = phases @ np.concatenate([moments, moments.conj()], axis=2)
-    count = moments.shape[2]
-    return np.stack([both[..., :count], both[..., count:].conj()])
+def _turned(moments: WaveArray, phases: WaveArray) -> WaveArray:
+    """Return moments @ phases and moments @ phases*, stacked; the second serves π − ψ."""
+    both = np.concatenate([moments, moments.conj()], axis=1) @ phases
+    count = moments.shape[1]
+    return np.stack([both[:, :count], both[:, count:].conj()])
 
 
-def _both(phases: WaveArray, moments: WaveArray) -> WaveArray:
-    """Return phases @ moments on all angles, the phases of those past 90° by conjugation."""
-    front, back = _turned(phases, moments)
-    return np.concatenate([front, back[:, -2::-1]], axis=1)
+def _all_round(moments: WaveArray, phases: WaveArray) -> WaveArray:
+    """Return moments @ phases on all angles, with the phases of those up to 90°."""
+    front, back = _turned(moments, phases)
+    return np.concatenate([front, back[..., -2::-1]], axis=2)
 
 
 def _sphere_mean(c: Corners, moment_z: WaveArray, moment_s: WaveArray) -> FloatArray:
@@ -197,32 +193,34 @@ def _sphere_mean(c: Corners, moment_z: WaveArray, moment_s: WaveArray) -> FloatA
     Gauss-Legendre in cosθ over one hemisphere, equal steps in φ over half a turn; φ past 90° by
     conjugation.
     """
-    _, count_s, count_z = moment_z.shape
+    n, count_s, count_z = moment_z.shape
     nodes, weights = _plain_gauss(count_z + 1)
+    cosines = ((nodes + 1.0) / 2.0).astype(np.float32)
+    sines = np.sqrt(1.0 - cosines**2)
     steps = count_s // 2
-    phi = ((np.arange(steps) + 0.5) * (np.pi / 2.0 / steps)).astype(np.float32)[:, None]
-    s = c.s.swapaxes(1, 2)
-    bends = [phi - 0.5 * c.apex_angle, phi + 0.5 * c.apex_angle]
+    phi = ((np.arange(steps) + 0.5) * (np.pi / 2.0 / steps)).astype(np.float32)
+    half, s = 0.5 * c.apex_angle[:, None], c.s[:, 0].T[:, :, None]
+    bends = [phi - half, phi + half]
+    phases = [
+        turn(-s * (sines[:, None] * np.cos(bend)[:, None, :]).reshape(n, 1, -1)) for bend in bends
+    ]
+    # Moments along z: (n, θ, n_s), even for the current along z and odd for that along s.
+    height = c.z[0].T[:, :, None] * cosines
+    even = (moment_z @ np.cos(height).astype(np.complex64)).swapaxes(1, 2)
+    odd = 1j * (moment_s @ np.sin(height).astype(np.complex64)).swapaxes(1, 2)
     facing = np.array([1.0, -1.0], dtype=np.float32)[:, None, None]
-    total = np.zeros(moment_z.shape[0])
-    for node, weight in zip(nodes.tolist(), weights.tolist(), strict=True):
-        cosine = (node + 1.0) / 2.0
-        sine = float(np.sqrt(1.0 - cosine * cosine))
-        height = c.z * cosine
-        sums = np.stack(
-            [
-                (moment_z * np.cos(height)).sum(axis=2) * sine,
-                (moment_s * np.sin(height)).sum(axis=2) * 1j,
-            ],
-            axis=2,
-        )
-        dipole = far_field(1.0, c.dipole_length, sine, cosine).astype(np.float32)
-        ahead = (dipole * turn(-c.spacing * sine * np.cos(phi)))[..., 0]
+    total = np.zeros(n)
+    for t, (sine, cosine, weight) in enumerate(
+        zip(sines.tolist(), cosines.tolist(), weights.tolist(), strict=True)
+    ):
+        moments = np.stack([even[:, t] * sine, odd[:, t]], axis=1)
+        dipole = far_field(1.0, c.dipole_length, sine, cosine).astype(np.float32)[:, None]
+        ahead = dipole * turn(-(c.spacing[:, None] * sine) * np.cos(phi))
         theta, cross = np.stack([ahead, ahead.conj()]), np.zeros(1, dtype=np.complex64)
-        for bend in bends:
-            plate = _turned(turn(-s * (sine * np.cos(bend))), sums)
-            theta = theta + plate[..., 0] - facing * cosine * np.cos(bend)[..., 0] * plate[..., 1]
-            cross = cross + np.sin(bend)[..., 0] * plate[..., 1]
+        for bend, phase in zip(bends, phases, strict=True):
+            plate = _turned(moments, phase[:, :, t * steps : (t + 1) * steps])
+            theta = theta + plate[:, :, 0] - facing * cosine * np.cos(bend) * plate[:, :, 1]
+            cross = cross + np.sin(bend) * plate[:, :, 1]
         power = theta.real**2 + theta.imag**2 + cross.real**2 + cross.imag**2
         total += weight / (4.0 * steps) * power.sum(axis=(0, 2), dtype=np.float64)
     return total

@@ -39,11 +39,13 @@ _TINY: Final = 1e-12
 class Corners:
     """Corners in order of rising apex angle, and the points on their plates; lengths times k.
 
+    Points come first and corners last here: the long axis has to be the inner one for speed.
+
     Parameters
     ----------
-    apex_angle, spacing, plate_width, plate_length, dipole_length : (n, 1, 1)
+    apex_angle, spacing, plate_width, plate_length, dipole_length : (n,)
         Radians, and lengths times k.
-    s, z : (n, n_s, 1), (n, 1, n_z)
+    s, z : (n_s, 1, n), (1, n_z, n)
         Distance from the apex line, and height over the middle, z >= 0.
     """
 
@@ -57,11 +59,11 @@ class Corners:
 
     def first(self, count: int) -> Corners:
         """Return the first `count` corners, views of the same memory."""
-        return Corners(**{name: value[:count] for name, value in vars(self).items()})
+        return Corners(**{name: value[..., :count] for name, value in vars(self).items()})
 
     def lit(self) -> list[tuple[int, int]]:
         """Return the orders j of images and how many corners have them: (j + 1/2)·α < π."""
-        most = int(np.ceil(np.pi / float(self.apex_angle[0, 0, 0])))
+        most = int(np.ceil(np.pi / float(self.apex_angle[0])))
         pairs = [(j, self.count(j + 0.5)) for j in range(most)]
         return [(j, n) for j, n in pairs if n]
 
@@ -81,7 +83,7 @@ class _Sources:
     def __call__(self, q: int, count: int) -> tuple[SingleArray, SingleArray, WaveArray]:
         """Return ρ, direct path and H_φ (exact, 1 A) of source q for the first `count` corners."""
         known = self._known.get(q)
-        if known is None or known[0].shape[0] < count:
+        if known is None or known[0].shape[-1] < count:
             c = self._corners.first(count)
             along = c.s - c.spacing * np.cos(0.5 * q * c.apex_angle)
             rho2 = along * along + (c.spacing * np.sin(0.5 * q * c.apex_angle)) ** 2
@@ -89,16 +91,16 @@ class _Sources:
             known = rho, np.sqrt(rho2 + c.z * c.z), magnetic_field(rho, c.z, c.dipole_length)
             self._known[q] = known
         rho, direct, field = known
-        return rho[:count], direct[:count], field[:count]
+        return rho[..., :count], direct[..., :count], field[..., :count]
 
     def bare(self, q: int, count: int) -> tuple[SingleArray, WaveArray]:
         """Return direct path and H_φ over the dipole's far field in that direction."""
         _, direct, field = self(q, count)
         known = self._bare.get(q)
-        if known is None or known.shape[0] < count:
+        if known is None or known.shape[-1] < count:
             c = self._corners.first(count)
             known = self._bare[q] = field / _lobe(c, c.z / direct)
-        return direct, known[:count]
+        return direct, known[..., :count]
 
 
 def magnetic_field(rho: SingleArray, z: SingleArray, length: SingleArray) -> WaveArray:
@@ -114,24 +116,24 @@ def magnetic_field(rho: SingleArray, z: SingleArray, length: SingleArray) -> Wav
 
 
 def currents(corners: Corners) -> tuple[WaveArray, WaveArray]:
-    """Return the current densities along z and along s at the points, (n, n_s, n_z)."""
+    """Return the current densities along z and along s at the points, (n_s, n_z, n)."""
     sources = _Sources(corners)
     along_z, along_s, at_ends = _image(corners, sources, 0)
     z_part, s_part = _apex(corners)
     along_z += z_part
     along_s += s_part
-    orders = int(np.ceil(np.pi / float(corners.apex_angle[0, 0, 0])))
+    orders = int(np.ceil(np.pi / float(corners.apex_angle[0])))
     for j, n in corners.lit()[1:]:
         z_part, s_part, _ = _image(corners.first(n), sources, j)
-        along_z[:n] += z_part
-        along_s[:n] += s_part
+        along_z[..., :n] += z_part
+        along_s[..., :n] += s_part
     for m in range(1, 2 * orders):
         n = corners.count(m / 1.25)
         if n:
-            along_z[:n] += _rim(corners.first(n), sources, m) * at_ends[:n]
+            along_z[..., :n] += _rim(corners.first(n), sources, m) * at_ends[..., :n]
         n = corners.count(m)
         if n:
-            along_z[:n] += _ends(corners.first(n), sources, m)
+            along_z[..., :n] += _ends(corners.first(n), sources, m)
     return along_z, along_s
 
 
@@ -147,7 +149,7 @@ def _image(c: Corners, sources: _Sources, j: int) -> tuple[WaveArray, WaveArray,
     """Return the current of image j with rim and ends of our plate, and the factor of the ends."""
     w, turned = c.plate_width, (j + 0.5) * c.apex_angle
     along, normal = c.spacing * np.cos(turned), c.spacing * np.sin(turned)
-    rho, direct, field = sources(2 * j + 1, c.s.shape[0])
+    rho, direct, field = sources(2 * j + 1, c.apex_angle.size)
     optics = field * (-2.0 * _sign(j) * normal / rho)
     over = np.sqrt((np.sqrt((w - along) ** 2 + normal**2) + w - c.s) ** 2 + c.z * c.z)
     at_rim = 1.0 + (soft(_root(over - direct)) - 1.0) * spread(direct, over)
@@ -248,25 +250,25 @@ def _rim(c: Corners, sources: _Sources, m: int) -> WaveArray:
         b = c.first(n)
         turned = (j + 0.5) * b.apex_angle
         ax, an = b.spacing * np.cos(turned), b.spacing * np.sin(turned)
-        path = np.sqrt((b.plate_width - ax) ** 2 + an * an) + after[:n]
+        path = np.sqrt((b.plate_width - ax) ** 2 + an * an) + after[..., :n]
         over = np.sqrt(path * path + b.z * b.z)
         # Reflected beyond the rim there is no such ray: its tail turns round.
-        height = np.maximum(b.s * np.sin(seen[:n]), 0.0) + an + _TINY
-        bounce = ax + (b.s * np.cos(seen[:n]) - ax) * an / height
+        height = np.maximum(b.s * np.sin(seen[..., :n]), 0.0) + an + _TINY
+        bounce = ax + (b.s * np.cos(seen[..., :n]) - ax) * an / height
         past = np.copysign(np.float32(1.0), b.plate_width - bounce)
         for sense in (-1, 1):  # the incident, the reflected side of the rim's field
             q = 2 * m + sense * (2 * j + 1)
             rho, direct, field = sources(abs(q), n)
             zeta = _root(over - direct)
             slope = -b.spacing * np.sin(0.5 * q * b.apex_angle) / rho
-            bend = 0.5 * (facing[:n] * (direct * path) / (rho * over) - slope)
+            bend = 0.5 * (facing[..., :n] * (direct * path) / (rho * over) - slope)
             if sense < 0:
                 part = tail(zeta) * slope + shed(zeta, bend)
             else:
                 part = seen_part(zeta, -past) * slope + shed(zeta, bend * past)
             part *= field
             part *= (2.0 * sense * _sign(j + m + 1)) * spread(direct, over)
-            total[:n] += part
+            total[..., :n] += part
     steepness = _steepness(c, after)
     across = np.sqrt(2.0 * w * w * (1.0 - np.cos(seen)))
     total *= soft(_root(steepness * (across + w - s - after)))
@@ -321,5 +323,5 @@ def _ends(c: Corners, sources: _Sources, m: int) -> WaveArray:
             part = waves[0] + waves[1]
             part *= _extent(b, ax, before, ax + on_edge, over, (px, after))
             part *= hard(_root(path / over * (np.abs(pn) + np.abs(beyond) - after)))
-            total[:n] += part
+            total[..., :n] += part
     return total * soft(_root(2.0 * (c.plate_width - c.s)))
