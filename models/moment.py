@@ -34,7 +34,7 @@ Feed = Literal["solved", "sinusoidal"]
 PROPORTION: Final = (2, 3, 4)
 """Cell counts of the three grids, in multiples of a design's base count."""
 
-DENSITIES: Final = (2.0, 3.0, 4.5)
+DENSITIES: Final = (1.8, 3.0, 4.5)
 """Base cells a wavelength, at least: the first attempt and the finer ones."""
 
 ENOUGH_DB: Final = 0.05

@@ -44,7 +44,7 @@ def test_finite_corners() -> None:
         return np.asarray(np.abs(getattr(figures, name)[:, 0] - table[name]))
 
     assert np.median(errors("directivity_dbi")) < 0.01
-    assert np.quantile(errors("directivity_dbi"), 0.95) < 0.05
+    assert np.quantile(errors("directivity_dbi"), 0.95) < 0.08
     assert np.median(errors("beamwidth_h_deg")) < 0.1
     assert np.quantile(errors("beamwidth_h_deg"), 0.95) < 1.0
     assert np.median(errors("beamwidth_e_deg")) < 0.1
