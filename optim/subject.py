@@ -12,7 +12,7 @@ from models import MODELS, Figures, Reflectors
 from models.conventions import FloatArray, decibels
 from models.figures import figures_of_merit
 from models.pattern import Pattern
-from optim.margins import MISSING, SIZES, Judge
+from optim.margins import SIZES, Judge
 from optim.requirements import Limit, Requirements
 
 __all__ = ["Subject"]
@@ -78,9 +78,14 @@ class Subject:
 
     def asked(self) -> list[tuple[Limit, float]]:
         """Return every limit with its margin in the limit's unit; NaN where a figure is missing."""
-        judge = Judge(self.requirements)
-        margins = judge.margins(self.reflectors, self.figures)[0]
-        return [
-            (limit, float(margin) if abs(margin) < MISSING * limit.scale else np.nan)
-            for limit, margin in zip(judge.limits, margins, strict=True)
-        ]
+        sizes = self.sizes()
+        return [(limit, self._margin(limit, sizes)) for limit in self.requirements.limits]
+
+    def _margin(self, limit: Limit, sizes: dict[str, float]) -> float:
+        if limit.figure in sizes:
+            values = np.array([sizes[limit.figure]])
+        else:
+            values = getattr(self.figures, limit.figure)[0]
+        worst = (values - limit.value if limit.sense == "min" else limit.value - values).min()
+        # Exactly on the limit is met, whatever the last bits say.
+        return float(np.round(worst, 9)) if np.isfinite(values).all() else float("nan")
