@@ -159,6 +159,12 @@ class Judge:
                 found[name] = values.max(axis=1)
         return found
 
+    def worse(self, first: FloatArray, second: FloatArray) -> FloatArray:
+        """Return of two rows of worst values, (n, n_figures) each, the worse of every figure."""
+        both = np.stack([first, second], axis=2)
+        figures = Figures(**{name: both[:, i] for i, name in enumerate(Figures.names())})
+        return np.column_stack(list(self.worst(figures).values()))
+
     def _tightest(self, reflectors: Reflectors, figures: Figures) -> FloatArray:
         misses = self.violations(reflectors, figures)[:, : len(self.limits)]
         measured = misses / np.maximum(self._reach, LEAST_REACH)

@@ -27,7 +27,7 @@ __all__ = [
     "sorted_rows",
 ]
 
-MOST_ROWS: Final = 200
+MOST_ROWS: Final = 100
 """Designs kept of a front."""
 
 MOST_NEAREST: Final = 3

@@ -31,6 +31,7 @@ __all__ = [
     "SpecError",
     "default_model",
     "read_requirements",
+    "understood",
 ]
 
 Sense = Literal["min", "max"]
@@ -70,6 +71,10 @@ class Band:
     def refined(self) -> Band:
         """Return the band on a grid twice as fine."""
         return Band(self.low_hz, self.high_hz, 2 * self.points - 1)
+
+    def between(self) -> FloatArray:
+        """Return the frequencies that the finer grid adds, Hz, (points - 1,)."""
+        return self.refined().frequencies()[1::2]
 
     @property
     def middle_hz(self) -> float:
@@ -185,7 +190,17 @@ def read_requirements(path: Path) -> Requirements:
     SpecError
         Holding every fault of the file.
     """
-    source = read_toml(path)
+    return understood(read_toml(path), path)
+
+
+def understood(source: Source, path: Path) -> Requirements:
+    """Return the requirements that `source`, read from `path`, holds; `source` is used up.
+
+    Raises
+    ------
+    SpecError
+        Holding every fault of the file.
+    """
     spec, faults = parse(SpecFile, source)
     raise_faults(source, faults, spec_faults(spec))
     band = band_of(spec.band)

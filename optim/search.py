@@ -105,9 +105,9 @@ def search(
     asked, requirements = requirements, bred(requirements)
     run, judge = requirements.run, Judge(requirements)
     rng = np.random.default_rng(run.seed)
-    coarse, fine = requirements.band.frequencies(), requirements.band.refined().frequencies()
+    coarse, between = requirements.band.frequencies(), requirements.band.between()
     decider = prove or scout
-    checking = Referee("check", space, judge, decider, fine, journal)
+    checking = Referee("check", space, judge, decider, between, journal)
     scouting = deciding = Referee("scout", space, judge, scout, coarse, journal)
     if prove is not None:
         scout_judge = Judge(scouted(requirements, space, scout.model))
@@ -127,7 +127,7 @@ def search(
         if builds is not None and "yield" in {goal.name for goal in requirements.goals}:
             rules = Judge(requirements, reach(scouting.archive.all, builds))
             deciding = Referee("prove", space, rules, prove, coarse, journal)
-            checking = Referee("check", space, rules, prove, fine, journal)
+            checking = Referee("check", space, rules, prove, between, journal)
         evolve(
             deciding,
             about_the_limits(scouting.archive, run.population),
@@ -194,26 +194,38 @@ def about_the_limits(archive: Archive, count: int) -> FloatArray:
 def settled(deciding: Referee, checking: Referee, pick: Callable[[Judged], IntArray]) -> Judged:
     """Return the designs that `pick` takes, all of them judged on the fine grid.
 
-    What it takes is checked, and it picks again with what the check showed, until nothing is new:
-    a design that fails on the fine grid makes room for the next.
+    What it takes is checked between the band points, and it picks again with what that showed,
+    until nothing is new: a design that fails on the fine grid makes room for the next.
     """
+    known = deciding.archive.all
+    if not len(deciding.rules.requirements.band.between()):
+        return known[pick(known)]
     for _ in range(CHECK_ROUNDS):
-        known = checked(deciding.archive.all, checking.archive)
+        known, _ = checked(deciding, checking)
         chosen = known[pick(known)]
         if all(key in checking.archive for key in chosen.keys):
             return chosen
         checking.judge(chosen.designs)
-    known = checking.archive.all
-    return known[pick(known)]
+    known, rows = checked(deciding, checking)
+    return known[rows][pick(known[rows])]
 
 
-def checked(judged: Judged, checks: Archive) -> Judged:
-    """Return `judged` with the rows that were checked on the fine grid as they are there."""
-    places = {key: place for place, key in enumerate(judged.keys)}
-    order = np.arange(len(judged))
-    for place, key in enumerate(checks.all.keys):
-        order[places[key]] = len(judged) + place
-    return Judged.concatenate([judged, checks.all])[order]
+def checked(deciding: Referee, checking: Referee) -> tuple[Judged, IntArray]:
+    """Return what is known, checked designs at the worse of both grids, and the rows of these."""
+    known, checks = deciding.archive.all, checking.archive.all
+    places = {key: place for place, key in enumerate(known.keys)}
+    rows = np.array([places[key] for key in checks.keys], dtype=np.intp)
+    at_points = known[rows]
+    whole = Judged(
+        designs=checks.designs,
+        objectives=np.maximum(at_points.objectives, checks.objectives),
+        margins=np.minimum(at_points.margins, checks.margins),
+        violations=np.maximum(at_points.violations, checks.violations),
+        worst=deciding.rules.worse(at_points.worst, checks.worst),
+    )
+    order = np.arange(len(known))
+    order[rows] = len(known) + np.arange(len(rows))
+    return Judged.concatenate([known, whole])[order], np.sort(rows)
 
 
 def scouted(requirements: Requirements, space: DesignSpace, model: str) -> Requirements:
