@@ -22,6 +22,7 @@ from rich.console import Console
 
 from models import MODELS
 from optim.analysis import Analysis, analyse, as_json, table_of
+from optim.cluster import ClusterError
 from optim.designfile import read_design
 from optim.faults import SpecError
 from optim.journal import JournalError
@@ -29,6 +30,7 @@ from optim.overview import overview
 from optim.precheck import findings
 from optim.requirements import default_model, read_requirements
 from optim.space import DesignSpace
+from optim.study_file import StudyError
 
 __all__ = ["app", "main", "step"]
 
@@ -38,6 +40,11 @@ BAD_INPUT: Final = 2
 INTERRUPTED: Final = 130
 
 P = ParamSpec("P")
+
+Cluster = Annotated[
+    str | None,
+    typer.Option(metavar="ADDRESS", help="Of a Dask scheduler whose workers do the work."),
+]
 
 app = typer.Typer(
     name="apexfront",
@@ -60,7 +67,7 @@ def step(command: Callable[P, int]) -> Callable[P, None]:
         try:
             code = command(*args, **kwargs)
             sys.stdout.flush()
-        except (SpecError, JournalError) as error:
+        except (SpecError, JournalError, ClusterError, StudyError) as error:
             message(str(error))
             code = BAD_INPUT
         except KeyboardInterrupt as interrupt:
@@ -174,6 +181,7 @@ def search(
             metavar="MODEL", callback=prover_name, help="Model with the last word, or none."
         ),
     ] = None,
+    cluster: Cluster = None,
     resume: Annotated[
         bool, typer.Option("--resume", help="Go on with the run in the folder.")
     ] = False,
@@ -183,11 +191,51 @@ def search(
     from optim.run import Options, run  # pymoo is slow to start
 
     options = Options(
-        out=out, jobs=jobs, seed=seed, scout=scout, prove=prove, resume=resume, quiet=quiet
+        out=out,
+        jobs=jobs,
+        seed=seed,
+        scout=scout,
+        prove=prove,
+        resume=resume,
+        quiet=quiet,
+        cluster=cluster,
     )
     result = run(spec, options)
     print(result.text())
     return DONE if result.met else NOT_MET
+
+
+@app.command("study")
+@step
+def study_of(
+    study: Annotated[Path, typer.Argument(metavar="STUDY", help="Study file.")],
+    out: Annotated[
+        Path | None,
+        typer.Option(metavar="DIR", help="Folder of results; runs/ and STUDY's name if left out."),
+    ] = None,
+    jobs: Annotated[
+        int | None,
+        typer.Option(metavar="N", min=1, help="Workers for all runs; all cores if left out."),
+    ] = None,
+    cluster: Cluster = None,
+    resume: Annotated[
+        bool, typer.Option("--resume", help="Go on with the study in the folder.")
+    ] = False,
+    quiet: Annotated[bool, typer.Option("--quiet", help="No progress, no messages.")] = False,
+    status: Annotated[
+        bool, typer.Option("--status", help="Only say how far the study in the folder is.")
+    ] = False,
+) -> int:
+    """Search again and again, with keys of the requirements varied, and compare."""
+    from optim import study as studies  # pymoo is slow to start
+
+    if status:
+        print(studies.status(study, out))
+        return DONE
+    options = studies.StudyOptions(out=out, jobs=jobs, cluster=cluster, resume=resume, quiet=quiet)
+    result = studies.study(study, options)
+    print(result.text())
+    return NOT_MET if result.failed else DONE
 
 
 @app.command("analyse")
@@ -219,6 +267,41 @@ def analyse_design(
     if out is not None:
         _write_analysis(analysis, out)
     return DONE
+
+
+@app.command("trade")
+@step
+def trade_off(
+    spec: Annotated[Path, typer.Argument(metavar="SPEC", help="Requirements file.")],
+    out: Annotated[
+        Path | None,
+        typer.Option(metavar="DIR", help="Folder; runs/ and SPEC's name with -trade if left out."),
+    ] = None,
+    jobs: Annotated[
+        int | None,
+        typer.Option(metavar="N", min=1, help="Worker processes; all cores if left out."),
+    ] = None,
+    model: Annotated[
+        str | None,
+        typer.Option(
+            metavar="MODEL",
+            callback=model_name,
+            help=f"One of {', '.join(MODELS)}; the one with the last word if left out.",
+        ),
+    ] = None,
+    quiet: Annotated[bool, typer.Option("--quiet", help="No progress, no messages.")] = False,
+) -> int:
+    """Show how the figures move, and what each requirement costs in size."""
+    from optim.trade import Options, trade  # pymoo and matplotlib are slow to start
+    from optim.trade_files import words, write
+
+    found = trade(spec, Options(out=out, jobs=jobs, model=model, quiet=quiet))
+    folder = out or Path("runs") / f"{spec.stem}-trade"
+    files = write(folder, found)
+    print(words(found))
+    if not quiet:
+        message(f"wrote {', '.join(files)} to {folder}")
+    return DONE if found.met else NOT_MET
 
 
 def _print_analysis(analysis: Analysis) -> None:

@@ -28,7 +28,8 @@ class Referee:
     evaluator : Evaluator
     frequencies : (n_freq,)
         Hz.
-    journal : Journal
+    journal : Journal, optional
+        Left out: nothing is recorded.
     """
 
     def __init__(
@@ -38,7 +39,7 @@ class Referee:
         rules: Judge,
         evaluator: Evaluator,
         frequencies: FloatArray,
-        journal: Journal,
+        journal: Journal | None,
     ) -> None:
         self.stage = stage
         self.space = space
@@ -71,7 +72,8 @@ class Referee:
         return self.archive.find(keys)
 
     def _evaluated(self, designs: FloatArray) -> Judged:
-        recorded = self._journal.replay(self.stage, designs)
+        journal = self._journal
+        recorded = None if journal is None else journal.replay(self.stage, designs)
         if recorded is not None:
             return Judged.from_numbers(designs, recorded, self.sizes)
         reflectors, rules = self.space.reflectors(designs), self.rules
@@ -83,7 +85,8 @@ class Referee:
             violations=rules.violations(reflectors, figures),
             worst=np.column_stack(list(rules.worst(figures).values())),
         )
-        self._journal.append(self.stage, designs, judged.numbers())
+        if journal is not None:
+            journal.append(self.stage, designs, judged.numbers())
         return judged
 
 
