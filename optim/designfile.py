@@ -20,6 +20,7 @@ from optim.requirements import (
     raise_faults,
 )
 from optim.schema import DesignFile, parse
+from optim.toml_text import quoted
 from optim.units import from_file, to_file
 
 __all__ = ["Design", "read_design", "write_design"]
@@ -115,7 +116,7 @@ def design_text(design: Design) -> str:
             "reference_ohm": terms.reference_ohm,
         },
     }
-    lines = [f"title = {_quoted(design.title)}"]
+    lines = [f"title = {quoted(design.title)}"]
     for table, values in tables.items():
         lines += ["", f"[{table}]"]
         lines += [f"{key} = {_value(value)}" for key, value in values.items()]
@@ -133,15 +134,6 @@ def _mhz(frequency: float) -> float:
 
 def _value(value: float | str) -> str:
     if isinstance(value, str):
-        return _quoted(value)
+        return quoted(value)
     # TOML wants a digit on both sides of the point and takes 1e7 for a number with a fraction.
     return repr(int(value)) if value == int(value) and abs(value) < 1e15 else repr(float(value))
-
-
-def _quoted(text: str) -> str:
-    """Return `text` as a TOML basic string."""
-    escaped = (
-        f"\\u{ord(c):04x}" if ord(c) < 32 or ord(c) == 127 else {"\\": "\\\\", '"': '\\"'}.get(c, c)
-        for c in text
-    )
-    return '"' + "".join(escaped) + '"'

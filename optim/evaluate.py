@@ -15,14 +15,18 @@ from functools import cache
 from types import TracebackType
 from typing import Any, Final, Self
 
+import numpy as np
 from joblib import Parallel, delayed, parallel_config
 from threadpoolctl import ThreadpoolController
 
 from models import Build, Figures, Reflectors, Terms, evaluate
 from models.conventions import FloatArray
+from optim.cluster import Cluster, ClusterError, here, refuse_another
 from optim.requirements import Requirements
 
 __all__ = ["CHUNK", "Evaluator"]
+
+Job = tuple[FloatArray, str, Build, Terms]
 
 CHUNK: Final = 25
 """Designs a worker takes at a time."""
@@ -44,18 +48,23 @@ class Evaluator:
         A name of `models.MODELS`.
     jobs : int
         Worker processes, 1 for none beside this one.
-    backend : str
-        A parallel backend that joblib knows; "loky" is processes on this machine.
+    cluster : Cluster, optional
+        Whose workers do the work, all of them, instead of those on this machine.
     """
 
     def __init__(
-        self, requirements: Requirements, model: str, jobs: int = 1, *, backend: str = "loky"
+        self,
+        requirements: Requirements,
+        model: str,
+        jobs: int = 1,
+        *,
+        cluster: Cluster | None = None,
     ) -> None:
         self.model = model
         self._build = requirements.build
         self._terms = requirements.terms
         self._jobs = jobs
-        self._backend = backend
+        self._cluster = cluster
         self._exit = ExitStack()
         self._pool: Parallel | None = None
 
@@ -76,24 +85,54 @@ class Evaluator:
         designs = reflectors.matrix()
         chunks = [designs[i : i + CHUNK] for i in range(0, len(designs), CHUNK)]
         job = (frequencies, self.model, self._build, self._terms)
-        if self._jobs == 1 and self._backend == "loky":
+        if self._cluster is not None:
+            return Figures.concatenate(self._far(self._cluster, chunks, job))
+        if self._jobs == 1:
             return Figures.concatenate([_figures(chunk, *job) for chunk in chunks])
-        pool = self._workers()
+        pool = self._workers(
+            "loky",
+            n_jobs=self._jobs,
+            inner_max_num_threads=1,
+            initializer=_leave_interrupts_to_main,
+            idle_worker_timeout=IDLE,
+        )
         return Figures.concatenate(list(pool(delayed(_figures)(chunk, *job) for chunk in chunks)))
 
-    def _workers(self) -> Parallel:
+    def _far(self, cluster: Cluster, chunks: list[FloatArray], job: Job) -> list[Figures]:
+        """Return the figures of each chunk from the workers of `cluster`."""
+        pool = self._workers("dask", n_jobs=-1, client=cluster.client)
+        frequencies, *rest = job
+        # Lists, not arrays: joblib would leave an array on one worker, to be lost with it.
+        grid = frequencies.tolist()
+        try:
+            found = list(
+                pool(delayed(_figures_there)(here(), c.tolist(), grid, *rest) for c in chunks)
+            )
+        except ClusterError:
+            raise
+        except Exception as error:
+            raise cluster.lost(error) from error
+        return found
+
+    def _workers(self, backend: str, *, n_jobs: int, **options: Any) -> Parallel:
         if self._pool is None:
-            options: dict[str, Any] = {}
-            if self._backend == "loky":
-                options = {
-                    "inner_max_num_threads": 1,
-                    "initializer": _leave_interrupts_to_main,
-                    "idle_worker_timeout": IDLE,
-                }
-            with parallel_config(self._backend, **options):
-                pool = Parallel(n_jobs=self._jobs, batch_size=1, max_nbytes=None)
+            with parallel_config(backend, **options):
+                pool = Parallel(n_jobs=n_jobs, batch_size=1, max_nbytes=None)
             self._pool = self._exit.enter_context(pool)
         return self._pool
+
+
+def _figures_there(
+    asked: dict[str, str],
+    designs: list[list[float]],
+    frequencies: list[float],
+    model: str,
+    build: Build,
+    terms: Terms,
+) -> Figures:
+    """Return the figures of a chunk, in a worker of a cluster that computes as `asked`."""
+    refuse_another(asked)
+    return _figures(np.array(designs), np.array(frequencies), model, build, terms)
 
 
 def _figures(

@@ -29,7 +29,7 @@ from optim.tables import (
 from optim.tolerance import Spread
 from optim.tolerance_table import spread_object, spread_rows, spread_words
 
-__all__ = ["Result"]
+__all__ = ["Result", "aligned"]
 
 
 @dataclass(frozen=True)
@@ -204,7 +204,7 @@ class Result:
             lines.append([f"goal {goal.name}", goal.sense, *(f"{value:.4g}" for value in found)])
         if spreads := self._spreads():
             lines += spread_rows(spreads, self.requirements)
-        return _aligned(lines)
+        return aligned(lines)
 
     def _relaxations(self) -> Iterator[str]:
         if self.met:
@@ -224,7 +224,7 @@ class Result:
             yield f"Relax {words} and a design exists."
 
 
-def _aligned(lines: list[list[str]]) -> list[str]:
+def aligned(lines: list[list[str]]) -> list[str]:
     """Return the lines of a table: first column to the left, the others to the right."""
     widths = np.array([[len(cell) for cell in line] for line in lines]).max(axis=0)
     return [

@@ -18,6 +18,7 @@ from typing import Final
 from joblib import cpu_count
 
 from models import MODELS
+from optim.cluster import connected
 from optim.evaluate import Evaluator
 from optim.faults import Fault, SpecError
 from optim.journal import Header, Journal, read_header
@@ -33,7 +34,7 @@ from optim.space import DesignSpace
 from optim.tolerance import STAGE
 from optim.tolerance import columns as yield_columns
 
-__all__ = ["JOURNAL", "Options", "run"]
+__all__ = ["DEFAULT_FOLDER", "JOURNAL", "LIBRARIES", "Options", "run"]
 
 JOURNAL: Final = "journal.jsonl"
 DEFAULT_FOLDER: Final = "runs"
@@ -57,6 +58,8 @@ class Options:
         Go on with the run in the folder.
     quiet : bool
         No progress and no messages.
+    cluster : str, optional
+        Address of a Dask scheduler whose workers do the work instead of processes here.
     """
 
     out: Path | None = None
@@ -66,10 +69,19 @@ class Options:
     prove: str | None = None
     resume: bool = False
     quiet: bool = False
+    cluster: str | None = None
 
 
-def run(spec: Path, options: Options) -> Result:
+def run(spec: Path, options: Options, progress: Progress | None = None) -> Result:
     """Search as `spec` asks and write the results; return them.
+
+    Parameters
+    ----------
+    spec : Path
+        The requirements file.
+    options : Options
+    progress : Progress, optional
+        Is told how the search goes, in place of one on stderr.
 
     Raises
     ------
@@ -77,6 +89,8 @@ def run(spec: Path, options: Options) -> Result:
         For a requirements file that cannot be used, and models that cannot judge it.
     JournalError
         For a folder that holds another run, or a journal that cannot be written.
+    ClusterError
+        For a cluster that cannot be used, or that stopped working.
     OSError
         For a folder or a file of results that cannot be written.
     KeyboardInterrupt
@@ -95,14 +109,15 @@ def run(spec: Path, options: Options) -> Result:
     folder.mkdir(parents=True, exist_ok=True)
     settings = requirements.run
     jobs = options.jobs or cpu_count()
-    scout = Evaluator(requirements, settings.scout, jobs)
-    prove = Evaluator(requirements, settings.prove, jobs) if settings.prove else None
     try:
         with (
             Journal(folder / JOURNAL, header, resume=options.resume) as journal,
-            scout,
-            prove or nullcontext(),
-            Progress(quiet=options.quiet) as progress,
+            connected(options.cluster) if options.cluster else nullcontext() as cluster,
+            Evaluator(requirements, settings.scout, jobs, cluster=cluster) as scout,
+            Evaluator(requirements, settings.prove, jobs, cluster=cluster)
+            if settings.prove
+            else nullcontext() as prove,
+            progress or Progress(quiet=options.quiet) as progress,
         ):
             if journal.remaining:
                 progress.say(f"taking {journal.remaining} batches from {folder / JOURNAL}")
@@ -121,7 +136,10 @@ def run(spec: Path, options: Options) -> Result:
             )
             progress.say(f"wrote front.csv, summary.json and design files to {folder}")
     except KeyboardInterrupt as interrupt:
-        again = shlex.join(["apexfront", "search", str(spec), "--out", str(folder), "--resume"])
+        again = shlex.join(
+            ["apexfront", "search", str(spec), "--out", str(folder), "--resume"]
+            + (["--cluster", options.cluster] if options.cluster else [])
+        )
         msg = f"interrupted; what was evaluated is safe. Go on with: {again}"
         raise KeyboardInterrupt(msg) from interrupt
     return result

@@ -22,6 +22,8 @@ __all__ = [
     "BuildTable",
     "DesignFile",
     "SpecFile",
+    "Table",
+    "Title",
     "parse",
 ]
 
@@ -232,7 +234,7 @@ class DesignFile(Table):
     build: BuildTable = BuildTable()
 
 
-FileT = TypeVar("FileT", SpecFile, DesignFile)
+FileT = TypeVar("FileT", bound=Table)
 
 
 def parse(schema: type[FileT], source: Source) -> tuple[FileT, dict[str, Fault]]:
