@@ -27,7 +27,16 @@ import numpy as np
 
 from models.conventions import FloatArray
 
-__all__ = ["FORMAT", "Header", "Journal", "JournalError", "read_header"]
+__all__ = [
+    "FORMAT",
+    "Header",
+    "Journal",
+    "JournalError",
+    "decode",
+    "encode",
+    "read_batches",
+    "read_header",
+]
 
 FORMAT: Final = 1
 """Version of the layout of the file."""
@@ -145,7 +154,7 @@ class Journal:
         batch = self._recorded.popleft()
         try:
             known = batch["stage"] == stage and np.array_equal(batch["designs"], designs)
-            numbers = _decode(batch["numbers"], len(designs)) if known else None
+            numbers = decode(batch["numbers"], len(designs)) if known else None
         except (KeyError, TypeError, ValueError) as error:
             raise _damaged(self._path, self._line) from error
         if numbers is None:
@@ -165,7 +174,7 @@ class Journal:
         JournalError
             If it cannot be written; the lines before stay good.
         """
-        self._write({"stage": stage, "designs": designs.tolist(), "numbers": _encode(numbers)})
+        self._write({"stage": stage, "designs": designs.tolist(), "numbers": encode(numbers)})
 
     def _lock(self) -> None:
         with _explained(self._path, "locked"):
@@ -221,6 +230,22 @@ def read_header(path: Path) -> Header | None:
     return _header(path, lines[0]) if lines else None
 
 
+def read_batches(path: Path) -> Iterator[tuple[str, FloatArray]]:
+    """Yield stage and numbers (n, n_numbers) of every batch of the journal at `path`, in order.
+
+    Raises
+    ------
+    JournalError
+        For a file that cannot be read or is damaged.
+    """
+    lines, _ = _whole_lines(path)
+    for number, batch in enumerate(lines[1:], start=2):
+        try:
+            yield batch["stage"], decode(batch["numbers"], len(batch["designs"]))
+        except (KeyError, TypeError, ValueError) as error:
+            raise _damaged(path, number) from error
+
+
 @contextmanager
 def _explained(path: Path, what: str) -> Iterator[None]:
     try:
@@ -268,11 +293,13 @@ def _entry(line: bytes) -> dict[str, Any] | None:
     return entry if isinstance(entry, dict) else None
 
 
-def _encode(matrix: FloatArray) -> str:
+def encode(matrix: FloatArray) -> str:
+    """Return the 64-bit floats of a matrix as text."""
     return base64.b64encode(matrix.astype("<f8").tobytes()).decode("ascii")
 
 
-def _decode(text: str, rows: int) -> FloatArray:
+def decode(text: str, rows: int) -> FloatArray:
+    """Return the matrix (rows, …) that `encode` made into text; `ValueError` for anything else."""
     values = np.frombuffer(base64.b64decode(text, validate=True), dtype="<f8")
     return values.reshape(rows, -1).astype(np.float64)
 

@@ -15,7 +15,7 @@ from hypothesis import strategies as st
 from hypothesis.extra.numpy import arrays
 
 from models.conventions import FloatArray
-from optim.journal import Header, Journal, JournalError, read_header
+from optim.journal import Header, Journal, JournalError, read_batches, read_header
 
 HEADER = Header(
     seed=7,
@@ -211,3 +211,16 @@ def test_header_can_be_read_alone(tmp_path: Path) -> None:
     path.write_text("{}\n")
     with pytest.raises(JournalError, match="no journal of this program"):
         read_header(path)
+
+
+def test_batches_can_be_read_without_a_search(tmp_path: Path) -> None:
+    path = tmp_path / "journal.jsonl"
+    fill(path, BATCHES)
+    found = list(read_batches(path))
+    assert [stage for stage, _ in found] == ["scout", "scout", "check"]
+    for (_, numbers), (_, _, asked) in zip(found, BATCHES, strict=True):
+        assert numbers.tobytes() == asked.tobytes()
+    with path.open("a") as file:
+        file.write('{"stage":"scout"}\n')
+    with pytest.raises(JournalError, match="line 5 is damaged"):
+        list(read_batches(path))
