@@ -188,7 +188,8 @@ def search(
     quiet: Annotated[bool, typer.Option("--quiet", help="No progress, no messages.")] = False,
 ) -> int:
     """Find the smallest antennas that meet the requirements."""
-    from optim.run import Options, run  # pymoo is slow to start
+    from optim.papers import write_run  # matplotlib and pymoo are slow to start
+    from optim.run import DEFAULT_FOLDER, Options, run
 
     options = Options(
         out=out,
@@ -202,6 +203,9 @@ def search(
     )
     result = run(spec, options)
     print(result.text())
+    written = write_run(out or Path(DEFAULT_FOLDER) / spec.stem, result)
+    if written and not quiet:
+        message(f"wrote drawings, data sheets and pattern data to {written[0].parents[1]}")
     return DONE if result.met else NOT_MET
 
 

@@ -1,6 +1,7 @@
 """The blank as a DXF drawing, mm, one layer a purpose; the same blank gives the same bytes.
 
-Frame: that of `optim.cutting`. OUTLINE and HOLES are cut through, BEND and NOTES are not.
+Frame: that of `optim.cutting`. OUTLINE and HOLES are cut through; DRILL is what is cut after
+bending, because a hole in a bend tears; BEND and NOTES are not cut.
 """
 
 from __future__ import annotations
@@ -20,7 +21,7 @@ if TYPE_CHECKING:
 
 __all__ = ["LAYERS", "blank_dxf"]
 
-LAYERS: Final = {"OUTLINE": 7, "BEND": 5, "HOLES": 1, "NOTES": 8}
+LAYERS: Final = {"OUTLINE": 7, "BEND": 5, "HOLES": 1, "DRILL": 6, "NOTES": 8}
 """Layers, and their colours by the format's index."""
 
 _MM: Final = 1e3
@@ -61,8 +62,11 @@ def _draw(document: Drawing, blank: Blank, name: str) -> None:
     if blank.bent:
         space.add_line((0.0, -y), (0.0, y), dxfattribs={"layer": "BEND"})
     for hole in blank.holes:
+        in_bend = abs(hole.x) < (blank.bend_zone + hole.diameter) / 2.0
         space.add_circle(
-            (_MM * hole.x, _MM * hole.y), _MM * hole.diameter / 2.0, dxfattribs={"layer": "HOLES"}
+            (_MM * hole.x, _MM * hole.y),
+            _MM * hole.diameter / 2.0,
+            dxfattribs={"layer": "DRILL" if blank.bent and in_bend else "HOLES"},
         )
     height = float(np.clip(0.02 * _MM * max(blank.width, blank.length), 0.5, 10.0))
     for row, line in enumerate(_notes(blank, name)):
@@ -84,5 +88,5 @@ def _notes(blank: Blank, name: str) -> list[str]:
         size,
         f"bend by {bend:.2f} deg to {180.0 - bend:.2f} deg between the plates, this face inside",
         f"allowance: inside radius {_MM * blank.radius:g}, neutral line at {K_FACTOR:g} thickness",
-        "drill the hole on the bend line after bending",
+        "layer DRILL: the hole on the bend line, drill it after bending",
     ][: 5 if blank.holes else 4]

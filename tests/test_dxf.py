@@ -56,9 +56,12 @@ def test_outline_bend_and_holes_are_those_of_the_blank() -> None:
     assert line.dxf.start.x == pytest.approx(middle, abs=0.1)
     assert line.dxf.end.x == pytest.approx(middle, abs=0.1)
     assert abs(line.dxf.end.y - line.dxf.start.y) == pytest.approx(400.0, abs=0.1)
+    boom, *bracket = blank.holes
+    (drilled,) = layers["DRILL"]
+    assert (drilled.dxf.center.x, 2.0 * drilled.dxf.radius) == (0.0, 1e3 * boom.diameter)
     found = sorted((c.dxf.center.x, c.dxf.center.y, 2.0 * c.dxf.radius) for c in layers["HOLES"])
-    holes = sorted((1e3 * h.x, 1e3 * h.y, 1e3 * h.diameter) for h in blank.holes)
-    assert len(holes) == 5
+    holes = sorted((1e3 * h.x, 1e3 * h.y, 1e3 * h.diameter) for h in bracket)
+    assert len(holes) == 4
     np.testing.assert_allclose(found, holes, atol=1e-6)
 
 
@@ -72,7 +75,8 @@ def test_notes_state_the_bend_both_ways() -> None:
 def test_flat_sheet_has_no_bend_line() -> None:
     _, layers = _read(_blank(180.0))
     assert layers["BEND"] == []
-    assert len(layers["OUTLINE"]) == 1
+    assert layers["DRILL"] == []
+    assert (len(layers["OUTLINE"]), len(layers["HOLES"])) == (1, 5)
 
 
 def test_same_bytes_and_the_library_left_as_it_was() -> None:

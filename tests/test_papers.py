@@ -14,9 +14,10 @@ import skrf
 from ezdxf.filemanagement import readfile
 
 from models import Reflectors, radiate
+from optim.cli import main
 from optim.papers import FOLDER, write_papers, write_run
 from optim.subject import Subject
-from tests.search_specs import read
+from tests.search_specs import SMALL, read, write
 from tests.test_result import result, row
 
 HOSTILE = "<script>alert(1)</script> ../../x $\\\\frac{1}{0}$"
@@ -123,3 +124,18 @@ def test_papers_are_for_what_meets_the_requirements(tmp_path: Path) -> None:
     written = write_run(tmp_path, result(tmp_path, front=design))
     assert {path.parent.name for path in written} == {"smallest"}
     assert all(path.is_relative_to(tmp_path / FOLDER / "smallest") for path in written)
+
+
+def test_a_search_writes_them(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    spec = write(tmp_path, SMALL.replace("min = 45", "min = 43"))
+    assert main(["search", str(spec), "--out", str(tmp_path / "out"), "--jobs", "1"]) == 0
+    assert f"pattern data to {tmp_path / 'out' / FOLDER}" in capsys.readouterr().err
+    roles = {path.stem for path in (tmp_path / "out" / "recommended").iterdir()}
+    papers = tmp_path / "out" / FOLDER
+    assert roles
+    assert {path.name for path in papers.iterdir()} == roles
+    for role in roles:
+        assert {path.name for path in (papers / role).iterdir()} == PAPERS - {
+            "sphere.csv",
+            "match.s1p",
+        }
