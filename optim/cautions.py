@@ -80,9 +80,10 @@ def _exposure(reflectors: Reflectors, band: Band, peak_gain_dbi: float) -> Itera
             "47 CFR 1.1310)."
         )
     side = float(np.hypot(reflectors.width[0], reflectors.height[0]))
+    near = far_field_from(side, band.high_hz)
     yield (
-        f"The formula holds in free space beyond {far_field_from(side, band.high_hz):.2g} m "
-        "(2D²/λ); ground that reflects can double the distance. Close to the dipole it says "
-        "nothing: nobody inside or in front of the reflector while it transmits. The codes of the "
-        "place and licensed practice decide."
+        f"The formula holds in free space beyond {near:.2g} m (2D²/λ): keep that distance where a "
+        "shorter one comes out, or measure. Ground that reflects can double the distance. Nobody "
+        "inside or right in front of the reflector while it transmits. The codes of the place and "
+        "licensed practice decide."
     )

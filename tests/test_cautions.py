@@ -37,6 +37,8 @@ def test_exposure() -> None:
     text = _texts(900, 915)["Radio exposure"]
     assert "0.36 m for 1 W, 1.2 m for 10 W, 3.6 m for 100 W" in text
     assert "0.6 mW/cm²" in text
+    # The diagonal is 0.707 m: 2 · 0.5 m² · 915 MHz/c = 3.05 m.
+    assert "beyond 3.1 m (2D²/λ): keep that distance" in text
     assert "licensed practice decide" in text
 
 
