@@ -12,7 +12,7 @@ from optim.journal import Journal
 from optim.margins import Judge
 from optim.space import DesignSpace
 
-__all__ = ["Referee", "columns"]
+__all__ = ["Referee", "columns", "worse_of"]
 
 
 class Referee:
@@ -28,6 +28,9 @@ class Referee:
     evaluator : Evaluator
     frequencies : (n_freq,)
         Hz.
+    further : (n_further,), optional
+        Frequencies at which only those designs are judged that hold at the first ones, Hz. What a
+        design that fails is judged by is then a lower bound of what it misses.
     journal : Journal, optional
         Left out: nothing is recorded.
     """
@@ -40,6 +43,8 @@ class Referee:
         evaluator: Evaluator,
         frequencies: FloatArray,
         journal: Journal | None,
+        *,
+        further: FloatArray | None = None,
     ) -> None:
         self.stage = stage
         self.space = space
@@ -49,6 +54,7 @@ class Referee:
         self.archive = Archive(Judged.none(space.low.size, self.sizes))
         self._evaluator = evaluator
         self._frequencies = frequencies
+        self._further = np.empty(0) if further is None else further
         self._journal = journal
 
     @property
@@ -76,18 +82,39 @@ class Referee:
         recorded = None if journal is None else journal.replay(self.stage, designs)
         if recorded is not None:
             return Judged.from_numbers(designs, recorded, self.sizes)
+        judged = self._judged(designs, self._frequencies)
+        holds = np.flatnonzero(judged.feasible)
+        if len(holds) and len(self._further):
+            more = self._judged(designs[holds], self._further)
+            whole = worse_of(self.rules, judged[holds], more)
+            order = np.arange(len(judged))
+            order[holds] = len(judged) + np.arange(len(holds))
+            judged = Judged.concatenate([judged, whole])[order]
+        if journal is not None:
+            journal.append(self.stage, designs, judged.numbers())
+        return judged
+
+    def _judged(self, designs: FloatArray, frequencies: FloatArray) -> Judged:
         reflectors, rules = self.space.reflectors(designs), self.rules
-        figures = self._evaluator.figures(reflectors, self._frequencies)
-        judged = Judged(
+        figures = self._evaluator.figures(reflectors, frequencies)
+        return Judged(
             designs=designs,
             objectives=rules.objectives(reflectors, figures),
             margins=rules.margins(reflectors, figures),
             violations=rules.violations(reflectors, figures),
             worst=np.column_stack(list(rules.worst(figures).values())),
         )
-        if journal is not None:
-            journal.append(self.stage, designs, judged.numbers())
-        return judged
+
+
+def worse_of(rules: Judge, first: Judged, second: Judged) -> Judged:
+    """Return the same designs, judged at two sets of frequencies, as judged at all of them."""
+    return Judged(
+        designs=first.designs,
+        objectives=np.maximum(first.objectives, second.objectives),
+        margins=np.minimum(first.margins, second.margins),
+        violations=np.maximum(first.violations, second.violations),
+        worst=rules.worse(first.worst, second.worst),
+    )
 
 
 def columns(rules: Judge) -> list[str]:

@@ -72,9 +72,22 @@ class Band:
         """Return the band on a grid twice as fine."""
         return Band(self.low_hz, self.high_hz, 2 * self.points - 1)
 
-    def between(self) -> FloatArray:
-        """Return the frequencies that the finer grid adds, Hz, (points - 1,)."""
-        return self.refined().frequencies()[1::2]
+    def split(self) -> tuple[FloatArray, FloatArray]:
+        """Return the band points as those to look at first, and the others, Hz.
+
+        Both edges and the middle come first; a design that fails there needs no more.
+        """
+        first = np.zeros(self.points, dtype=bool)
+        first[[0, self.points // 2, -1]] = True
+        points = self.frequencies()
+        return points[first], points[~first]
+
+    def unseen(self) -> FloatArray:
+        """Return the points of the finer grid that are not among the first of this one, Hz."""
+        fine = self.refined()
+        first = np.zeros(fine.points, dtype=bool)
+        first[[0, 2 * (self.points // 2), -1]] = True
+        return fine.frequencies()[~first]
 
     @property
     def middle_hz(self) -> float:

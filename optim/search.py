@@ -27,7 +27,7 @@ from optim.margins import Judge
 from optim.precheck import blind_spots
 from optim.progress import Progress
 from optim.recommend import front_rows, nearest_rows, relaxation_rows, sorted_rows
-from optim.referee import Referee
+from optim.referee import Referee, worse_of
 from optim.requirements import Goal, Requirements
 from optim.robust import bred, decide, reach, tolerated
 from optim.space import DesignSpace
@@ -105,14 +105,14 @@ def search(
     asked, requirements = requirements, bred(requirements)
     run, judge = requirements.run, Judge(requirements)
     rng = np.random.default_rng(run.seed)
-    coarse, between = requirements.band.frequencies(), requirements.band.between()
+    (first, further), unseen = requirements.band.split(), requirements.band.unseen()
     decider = prove or scout
-    checking = Referee("check", space, judge, decider, between, journal)
-    scouting = deciding = Referee("scout", space, judge, scout, coarse, journal)
+    checking = Referee("check", space, judge, decider, unseen, journal)
+    scouting = deciding = Referee("scout", space, judge, scout, first, journal, further=further)
     if prove is not None:
         scout_judge = Judge(scouted(requirements, space, scout.model))
-        scouting = Referee("scout", space, scout_judge, scout, coarse, journal)
-        deciding = Referee("prove", space, judge, prove, coarse, journal)
+        scouting = Referee("scout", space, scout_judge, scout, first, journal, further=further)
+        deciding = Referee("prove", space, judge, prove, first, journal, further=further)
     evolve(
         scouting,
         first_sample(space, FIRST_SAMPLE * run.population, rng),
@@ -126,8 +126,8 @@ def search(
     if prove is not None:
         if builds is not None and "yield" in {goal.name for goal in requirements.goals}:
             rules = Judge(requirements, reach(scouting.archive.all, builds))
-            deciding = Referee("prove", space, rules, prove, coarse, journal)
-            checking = Referee("check", space, rules, prove, between, journal)
+            deciding = Referee("prove", space, rules, prove, first, journal, further=further)
+            checking = Referee("check", space, rules, prove, unseen, journal)
         evolve(
             deciding,
             about_the_limits(scouting.archive, run.population),
@@ -194,11 +194,11 @@ def about_the_limits(archive: Archive, count: int) -> FloatArray:
 def settled(deciding: Referee, checking: Referee, pick: Callable[[Judged], IntArray]) -> Judged:
     """Return the designs that `pick` takes, all of them judged on the fine grid.
 
-    What it takes is checked between the band points, and it picks again with what that showed,
+    What it takes is checked at the points not seen yet, and it picks again with what that showed,
     until nothing is new: a design that fails on the fine grid makes room for the next.
     """
     known = deciding.archive.all
-    if not len(deciding.rules.requirements.band.between()):
+    if not len(deciding.rules.requirements.band.unseen()):
         return known[pick(known)]
     for _ in range(CHECK_ROUNDS):
         known, _ = checked(deciding, checking)
@@ -215,14 +215,7 @@ def checked(deciding: Referee, checking: Referee) -> tuple[Judged, IntArray]:
     known, checks = deciding.archive.all, checking.archive.all
     places = {key: place for place, key in enumerate(known.keys)}
     rows = np.array([places[key] for key in checks.keys], dtype=np.intp)
-    at_points = known[rows]
-    whole = Judged(
-        designs=checks.designs,
-        objectives=np.maximum(at_points.objectives, checks.objectives),
-        margins=np.minimum(at_points.margins, checks.margins),
-        violations=np.maximum(at_points.violations, checks.violations),
-        worst=deciding.rules.worse(at_points.worst, checks.worst),
-    )
+    whole = worse_of(deciding.rules, known[rows], checks)
     order = np.arange(len(known))
     order[rows] = len(known) + np.arange(len(rows))
     return Judged.concatenate([known, whole])[order], np.sort(rows)
