@@ -85,7 +85,7 @@ class Result:
         group = "recommended" if self.met else "nearest"
         (folder / group).mkdir(exist_ok=True)
         judged, rows = self.shown()
-        spreads = self._spreads()
+        spreads = self.spreads()
         entries: list[dict[str, Any]] = []
         for name, row in rows.items():
             file = f"{group}/{name.removeprefix('nearest_')}.toml"
@@ -93,15 +93,12 @@ class Result:
             entries.append({"role": name, "design_file": file, **self._numbers(judged, row)})
             if name in spreads:
                 entries[-1]["tolerance"] = spread_object(spreads[name])
-        labels = [limit.label for limit in self.requirements.limits]
-        binding = binding_limits(judged[list(rows.values())])
         relaxed = self.found.relaxed
         summary = {
             "title": self.requirements.title,
             "status": "met" if self.met else "not met",
             "recommended": entries if self.met else [],
-            "binding": [labels[column] for column in binding]
-            + [relaxed["requirement"] for relaxed in self._relaxed_yield()],
+            "binding": self.binding(),
             "nearest": [] if self.met else entries,
             "relaxations": [
                 {
@@ -113,7 +110,7 @@ class Result:
                 }
                 for row in range(len(relaxed))
             ]
-            + [{"limits": [relaxed]} for relaxed in self._relaxed_yield()],
+            + [{"limits": [relaxed]} for relaxed in self.relaxed_yield()],
             "designs_on_front": len(front),
             "decided_by": self.found.model,
             "evaluations": self.found.evaluations,
@@ -124,21 +121,32 @@ class Result:
 
     def text(self) -> str:
         """Return the outcome as a page of plain text."""
-        lines = [*self._verdict(), "", *self._table(), *self._relaxations()]
-        if spreads := self._spreads():
+        lines = [*self.verdict(), "", *self._table()]
+        if not self.met:
+            lines += ["", *self.relaxations()]
+        if spreads := self.spreads():
             lines += ["", *spread_words(spreads, self.found.model)]
         return "\n".join(lines)
 
-    def _spreads(self) -> dict[str, Spread]:
+    def binding(self) -> list[str]:
+        """Return the requirements that the designs shown miss or barely meet."""
+        judged, rows = self.shown()
+        labels = [limit.label for limit in self.requirements.limits]
+        binding = binding_limits(judged[list(rows.values())])
+        return [labels[column] for column in binding] + [
+            relaxed["requirement"] for relaxed in self.relaxed_yield()
+        ]
+
+    def spreads(self) -> dict[str, Spread]:
         """Return the spreads of the designs shown, by their names."""
         judged, rows = self.shown()
         found = self.found.spreads
         known = {name: found.get(judged.keys[row]) for name, row in rows.items()}
         return {name: spread for name, spread in known.items() if spread is not None}
 
-    def _relaxed_yield(self) -> list[dict[str, Any]]:
+    def relaxed_yield(self) -> list[dict[str, Any]]:
         """Return by how much to relax the yield, if it alone is what the nearest designs miss."""
-        spreads = self._spreads()
+        spreads = self.spreads()
         if self.met or not spreads:
             return []
         best = max(spread.expected for spread in spreads.values())
@@ -170,7 +178,8 @@ class Result:
             "smallest_margin": judged.smallest_margin[row],
         }
 
-    def _verdict(self) -> Iterator[str]:
+    def verdict(self) -> Iterator[str]:
+        """Yield whether the requirements are met, by which model and where."""
         band, model = self.requirements.band, self.found.model
         points = band.refined().points
         where = f"{points} frequencies from {band.low_hz / 1e6:g} to {band.high_hz / 1e6:g} MHz"
@@ -202,16 +211,16 @@ class Result:
             sign = 1.0 if goal.sense == "min" else -1.0
             found = sign * judged.objectives[list(rows.values()), goal_column]
             lines.append([f"goal {goal.name}", goal.sense, *(f"{value:.4g}" for value in found)])
-        if spreads := self._spreads():
+        if spreads := self.spreads():
             lines += spread_rows(spreads, self.requirements)
         return aligned(lines)
 
-    def _relaxations(self) -> Iterator[str]:
+    def relaxations(self) -> Iterator[str]:
+        """Yield what to relax for a design to exist; nothing if one does."""
         if self.met:
             return
-        yield ""
         relaxed = self.found.relaxed
-        short = self._relaxed_yield()
+        short = self.relaxed_yield()
         for value in short:
             yield f"Relax min_yield from {value['from']:g} to {value['to']:g} and a design exists."
         if not len(relaxed) and not short:
