@@ -10,6 +10,8 @@ from __future__ import annotations
 from typing import TYPE_CHECKING, Final
 
 import numpy as np
+from matplotlib import colormaps
+from matplotlib.colors import ListedColormap
 from matplotlib.figure import Figure
 from matplotlib.lines import Line2D
 from matplotlib.patches import Patch
@@ -41,6 +43,9 @@ ALWAYS: Final = (
     "vswr",
 )
 _EDGE: Final = "#d55e00"
+_SHADES: Final = ListedColormap(colormaps["cividis"](np.linspace(0.3, 1.0, 256)))
+"""Light enough throughout for hatching on top."""
+
 _MET: Final = -1e-6
 """A margin from here on is met: exactly on the limit is inside."""
 
@@ -162,15 +167,17 @@ def _panel(
     axes.grid(visible=False)
     low, high = np.percentile(values[np.isfinite(values)], _ENDS)
     shade = axes.pcolormesh(
-        x, y, values, cmap="cividis", shading="nearest", vmin=low, vmax=high, rasterized=True
+        x, y, values, cmap=_SHADES, shading="nearest", vmin=low, vmax=high, rasterized=True
     )
     figure.colorbar(shade, ax=axes, pad=0.02, extend="both")
     if own:
         _ruled_out(axes, x, y, chart.margins[..., own].min(axis=2))
     # What is missing counts as a thousand steps: cut, so that the line stands where it belongs.
-    smallest = np.clip(chart.smallest_margin, -1.0, 1.0)
-    if smallest.min() < _MET <= smallest.max():
-        axes.contour(x, y, smallest, levels=[_MET], colors=[_EDGE], linewidths=2.4)
+    border = np.clip(chart.border, -1.0, 1.0)
+    if border.min() < _MET <= border.max():
+        axes.contour(
+            x, y, border, levels=[_MET], colors=[_EDGE], linewidths=2.4, linestyles="solid"
+        )
     place = [
         in_file_units(name, chart.at[[VARIABLES.index(name)]]).tolist()
         for name in (chart.across, chart.upwards)
@@ -185,4 +192,6 @@ def _ruled_out(axes: Axes, x: FloatArray, y: FloatArray, margin: FloatArray) -> 
         return
     axes.contourf(x, y, margin, levels=[margin.min() - 1.0, _MET], colors="none", hatches=["////"])
     if margin.max() >= _MET:
-        axes.contour(x, y, margin, levels=[_MET], colors=[BLACK], linewidths=1.2)
+        axes.contour(
+            x, y, margin, levels=[_MET], colors=[BLACK], linewidths=1.2, linestyles="solid"
+        )

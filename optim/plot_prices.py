@@ -46,7 +46,7 @@ def draw_prices(
         That judged.
     """
     shown = [price for price in found if price.moves][:MOST_PANELS] or list(found)[:1]
-    flat = ", ".join(words_of(price.limit) for price in found if not price.moves)
+    flat = "; ".join(words_of(price.limit) for price in found if not price.moves)
     rows = max(-(-len(shown) // _COLUMNS), 1)
     with house_style():
         figure = new_figure(7.6, 1.3 + 2.0 * rows, title=title)
@@ -68,7 +68,7 @@ def draw_prices(
             )
             note = f"Smallest designs found by short searches, judged by {model}."
             if flat:
-                note += "\n" + plain(f"No effect within a step: {flat}.", width=175.0, lines=3)
+                note += "\n" + plain(f"No effect within a step: {flat}", width=175.0, lines=3)
             legend.set_title(note, FontProperties(size=TYPE))
             legend.set_alignment("left")
     return figure
@@ -116,4 +116,4 @@ def words_of(limit: Limit) -> str:
     else:
         name, _, unit = limit.key.rpartition("_")
         what = f"{name.replace('_', ' ')} ({_UNITS[unit]})"
-    return f"{what}, {limit.sense}."
+    return f"{what} at {'least' if limit.sense == 'min' else 'most'}"

@@ -1,7 +1,7 @@
 """How the figures move with the dimensions and over the band, and what each requirement costs.
 
 A short search finds designs to start from (or takes those of a finished search of the same
-requirements), then each limit is moved and searched about, then maps are drawn through the smallest
+requirements), then each limit is moved and searched about, then maps are drawn through the balanced
 design. One model judges everything; what it is, and at how many frequencies, is said on every
 picture. Sizes are those of the first size among the goals, frontal area if there is none.
 """
@@ -33,7 +33,7 @@ from optim.requirements import Goal, Requirements, read_requirements
 from optim.run import unjudged
 from optim.search import FIRST_SAMPLE, first_sample
 from optim.space import DesignSpace
-from optim.trade_maps import Map, chosen_pairs, map_of
+from optim.trade_maps import POINTS, Map, chosen_pairs, map_of
 from optim.trade_prices import Price, costliest, prices
 from optim.units import FILE_KEYS, VARIABLES, from_file
 
@@ -89,7 +89,9 @@ class Trade:
     judged : int
         Designs judged.
     shown : dict
-        Name to row (5,) of the designs drawn over the band, the one of the maps first.
+        Name to row (5,) of the designs drawn over the band.
+    through : str
+        Name of the design that the maps go through: one with room on all sides, if there is one.
     band : (n_band,)
         Frequencies of the band curves, Hz.
     curves : Figures
@@ -107,6 +109,7 @@ class Trade:
     frequencies: FloatArray
     judged: int
     shown: dict[str, FloatArray]
+    through: str
     band: FloatArray
     curves: Figures
     maps: list[Map]
@@ -157,9 +160,9 @@ def trade(spec: Path, options: Options) -> Trade:
         found = costliest(prices(requirements, referee, rng, progress))
         shown = _shown(referee.archive.all, requirements, space)
         progress.say(f"drawing maps by {model}")
-        at = next(iter(shown.values()))
+        through = "balanced" if "balanced" in shown else next(iter(shown))
         maps = [
-            map_of(requirements, space, evaluator, frequencies, at, pair)
+            map_of(requirements, space, evaluator, frequencies, shown[through], pair, POINTS)
             for pair in chosen_pairs(space)
         ]
         band = _few(requirements, BAND_FREQUENCIES, least=BAND_FREQUENCIES)
@@ -171,6 +174,7 @@ def trade(spec: Path, options: Options) -> Trade:
         frequencies=frequencies,
         judged=len(referee.archive),
         shown=shown,
+        through=through,
         band=band,
         curves=curves,
         maps=maps,

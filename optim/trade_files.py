@@ -70,7 +70,7 @@ def write(folder: Path, found: Trade) -> list[str]:
             title=title,
             chart=chart,
             limits=found.requirements.limits,
-            name=next(iter(found.shown)),
+            name=found.through,
             model=found.model,
             frequencies_hz=found.frequencies,
         )
@@ -98,6 +98,7 @@ def _words(found: Trade) -> Iterator[str]:
     if known:
         yield f"Smallest {size} that meets everything: {known[0].asked / scale:.4g} {unit}."
         yield from _headline(known, size)
+        yield f"The maps go through the design called {found.through.replace('_', ' ')}."
     else:
         yield "No design was found that meets everything; the maps go through the nearest one."
     yield ""

@@ -18,7 +18,7 @@ from optim.requirements import Requirements
 from optim.space import DesignSpace
 from optim.units import VARIABLES
 
-__all__ = ["Map", "chosen_pairs", "map_of"]
+__all__ = ["POINTS", "Map", "chosen_pairs", "map_of"]
 
 POINTS: Final = 41
 """Along each axis."""
@@ -50,8 +50,8 @@ class Map:
         m².
     margins : (n_y, n_x, n_limits)
         In the limit's unit.
-    smallest_margin : (n_y, n_x)
-        Of all conditions, guards included, in steps.
+    violations : (n_y, n_x, n_con)
+        Of all conditions, guards included, in steps, at most 0 where met.
     """
 
     across: str
@@ -62,7 +62,21 @@ class Map:
     worst: dict[str, FloatArray]
     frontal_area: FloatArray
     margins: FloatArray
-    smallest_margin: FloatArray
+    violations: FloatArray
+
+    @property
+    def smallest_margin(self) -> FloatArray:
+        """Of all conditions, in steps, (n_y, n_x)."""
+        return np.asarray(-self.violations.max(axis=2))
+
+    @property
+    def border(self) -> FloatArray:
+        """Smallest margin, in steps, of the conditions that rule out some of the map, (n_y, n_x).
+
+        Infinite where none does. A condition met everywhere, however barely, has no border here.
+        """
+        bounding = (self.violations > 0.0).any(axis=(0, 1))
+        return np.asarray(-self.violations[..., bounding].max(axis=2, initial=-np.inf))
 
     @property
     def rows(self) -> FloatArray:
@@ -83,9 +97,9 @@ def map_of(
     frequencies: FloatArray,
     at: FloatArray,
     pair: tuple[str, str],
-    points: int = POINTS,
+    points: int,
 ) -> Map:
-    """Return the map of `pair` through the design `at` (5,), over the ranges of the space."""
+    """Return the map of `pair` through the design `at` (5,), over the ranges, `points` a side."""
     across, upwards = pair
     columns = [VARIABLES.index(name) for name in pair]
     x, y = (np.linspace(space.low[c], space.high[c], points) for c in columns)
@@ -104,7 +118,7 @@ def map_of(
         worst={name: v.reshape(shape) for name, v in judge.worst(figures).items()},
         frontal_area=reflectors.frontal_area.reshape(shape),
         margins=judge.margins(reflectors, figures).reshape(*shape, -1),
-        smallest_margin=-judge.violations(reflectors, figures).max(axis=1).reshape(shape),
+        violations=judge.violations(reflectors, figures).reshape(*shape, -1),
     )
 
 

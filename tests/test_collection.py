@@ -21,6 +21,7 @@ TESTED_ELSEWHERE = {
     "optim/overview.py": "the text that test_cli.py reads",
     "optim/schema.py": "what test_requirements.py and test_designfile.py read",
     "optim/tolerance_table.py": "rows and object that test_robust.py reads",
+    "optim/trade_files.py": "files and words that test_trade.py reads",
     "optim/units.py": "round trips in test_designfile.py",
     "optim/values.py": "what test_requirements.py refuses",
 }

@@ -1,0 +1,98 @@
+"""Trade studies from end to end, on the image model."""
+
+from __future__ import annotations
+
+import csv
+import json
+from pathlib import Path
+
+import numpy as np
+import pytest
+
+from optim.cli import main
+from optim.requirements import Goal, read_requirements
+from optim.trade import Options, known_designs, trade
+from optim.trade_files import words, write
+from tests.search_specs import EASY, IMPOSSIBLE
+from tests.search_specs import write as write_spec
+
+SPEC = EASY.replace(
+    "apex_angle_deg = [60, 90]", "apex_angle_deg = 90\nplate_length_mm = 500"
+).replace('"Easy"', '"$5 </title><script>x</script>"')
+
+
+@pytest.fixture(autouse=True)
+def short(monkeypatch: pytest.MonkeyPatch) -> None:
+    monkeypatch.setattr("optim.trade.POINTS", 9)
+    monkeypatch.setattr("optim.trade.POPULATION", 16)
+    monkeypatch.setattr("optim.trade.GENERATIONS", 3)
+    monkeypatch.setattr("optim.trade_prices.POPULATION", 8)
+    monkeypatch.setattr("optim.trade_prices.GENERATIONS", 2)
+
+
+def test_files_and_words(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    spec, out = write_spec(tmp_path, SPEC), tmp_path / "out"
+    assert main(["trade", str(spec), "--out", str(out), "--jobs", "1", "--quiet"]) == 0
+    printed = capsys.readouterr()
+    assert printed.err == ""
+    assert (out / "trade.txt").read_text(encoding="utf-8") == printed.out
+    assert "costs most" in printed.out or "No requirement" in printed.out
+    assert "Judged by image at 3 frequencies from 420 to 440 MHz" in printed.out
+    names = {path.name for path in out.iterdir()}
+    maps = {"map_spacing_dipole_length"}
+    stems = {"prices", "band"} | maps
+    assert names == {"trade.txt"} | {f"{s}.{e}" for s in stems for e in ("png", "csv")}
+    with (out / "map_spacing_dipole_length.csv").open(encoding="utf-8") as stream:
+        lines = list(csv.DictReader(stream))
+    assert len(lines) == 9 * 9
+    assert {line["meets"] for line in lines} == {"0", "1"}
+    # A model that knows no plate ends has no front-to-back ratio: empty, not a number.
+    assert lines[0]["front_to_back_db"] == ""
+    with (out / "prices.csv").open(encoding="utf-8") as stream:
+        asked = [line for line in csv.DictReader(stream) if line["asked"] == "1"]
+    assert len(asked) == 3
+    assert len({line["smallest_frontal_area"] for line in asked}) == 1
+
+
+def test_same_whatever_the_workers(tmp_path: Path) -> None:
+    spec = write_spec(tmp_path, SPEC)
+    one, two = (trade(spec, Options(jobs=jobs, quiet=True)) for jobs in (1, 2))
+    assert words(one) == words(two)
+    assert np.array_equal(one.maps[0].violations, two.maps[0].violations)
+
+
+def test_nothing_meets_the_requirements(tmp_path: Path) -> None:
+    found = trade(write_spec(tmp_path, IMPOSSIBLE), Options(jobs=1, quiet=True))
+    assert not found.met
+    assert next(iter(found.shown)) == "nearest_1"
+    text = words(found)
+    assert "No design was found that meets everything" in text
+    assert "a design" in text
+    assert "prices.png" in write(tmp_path / "out", found)
+
+
+def test_starts_from_a_finished_search_of_the_same_file(tmp_path: Path) -> None:
+    spec = write_spec(tmp_path, SPEC)
+    asked = read_requirements(spec)
+    assert known_designs(tmp_path, asked).shape == (0, 5)
+    run = ["search", str(spec), "--out", str(tmp_path / "run"), "--jobs", "1", "--quiet"]
+    assert main(run) == 0
+    front = known_designs(tmp_path / "run", asked)
+    assert len(front) > 1
+    assert front[0, 0] == pytest.approx(np.pi / 2.0)
+    summary = json.loads((tmp_path / "run/summary.json").read_text(encoding="utf-8"))
+    summary["spec_sha256"] = "other"
+    (tmp_path / "run/summary.json").write_text(json.dumps(summary), encoding="utf-8")
+    assert len(known_designs(tmp_path / "run", asked)) == 0
+
+
+def test_size_comes_first_and_a_model_must_be_able(
+    tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    text = SPEC.replace('minimise = ["frontal_area", "beamwidth_h"]', "")
+    found = trade(write_spec(tmp_path, text), Options(jobs=1, quiet=True))
+    assert found.size == Goal("frontal_area", "min")
+    match = write_spec(tmp_path, SPEC.replace("[search]", "[require.vswr]\nmax = 2\n[search]"))
+    assert main(["trade", str(match), "--model", "image", "--out", str(tmp_path / "x")]) == 2
+    assert "vswr" in capsys.readouterr().err
+    assert not (tmp_path / "x").exists()
