@@ -14,7 +14,7 @@ import numpy as np
 
 from models.conventions import FloatArray
 from optim.archive import Judged, diverse
-from optim.recommend import front_rows, roles
+from optim.recommend import front_rows, roles, sorted_rows
 from optim.requirements import Goal, Requirements
 from optim.space import DesignSpace
 from optim.tolerance import Builds, Spread
@@ -90,6 +90,8 @@ def decide(
         if not len(front) and len(short):
             nearest = shown = short
     if len(front):
+        # Of equals the first one has a role, so the order must be the final one.
+        front = front[sorted_rows(front)]
         area = space.reflectors(front.designs).frontal_area
         shown = front[list(roles(front, asked.goals, area).values())]
     spreads = dict(zip(shown.keys, builds.spreads(shown.designs), strict=True))
