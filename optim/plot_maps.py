@@ -163,7 +163,7 @@ def _panel(
     figure: Figure, axes: Axes, chart: Map, label: str, values: FloatArray, own: list[int]
 ) -> None:
     x, y = in_file_units(chart.across, chart.x), in_file_units(chart.upwards, chart.y)
-    axes.set_title(label)
+    axes.set_title(label, pad=10.0)  # room for a star on the upper edge
     axes.grid(visible=False)
     low, high = np.percentile(values[np.isfinite(values)], _ENDS)
     shade = axes.pcolormesh(

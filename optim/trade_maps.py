@@ -76,7 +76,9 @@ class Map:
         Infinite where none does. A condition met everywhere, however barely, has no border here.
         """
         bounding = (self.violations > 0.0).any(axis=(0, 1))
-        return np.asarray(-self.violations[..., bounding].max(axis=2, initial=-np.inf))
+        # Exactly 0 is met, by no known distance: a step stands in, or the border would run there.
+        violations = np.where(self.violations == 0.0, -1.0, self.violations)
+        return np.asarray(-violations[..., bounding].max(axis=2, initial=-np.inf))
 
     @property
     def rows(self) -> FloatArray:
