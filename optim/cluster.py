@@ -22,7 +22,7 @@ from typing import Any, Final
 
 __all__ = ["Cluster", "ClusterError", "connected", "here", "refuse_another"]
 
-REACH: Final = 10.0
+REACH: Final = 5.0
 """Seconds within which a scheduler must answer."""
 
 SAME: Final = ("numpy", "scipy")
@@ -44,6 +44,18 @@ class Cluster:
     def workers(self) -> int:
         """Return the number of workers there are now."""
         return len(self.client.ncores())
+
+    def backend(self) -> Any:
+        """Return joblib's way to this cluster."""
+        from joblib._dask import DaskDistributedBackend
+
+        class Backend(DaskDistributedBackend):  # type: ignore[misc]
+            """joblib's own, which would leave the work at home where there is one worker."""
+
+            def effective_n_jobs(self, n_jobs: int) -> int:
+                return max(2, int(super().effective_n_jobs(n_jobs)))
+
+        return Backend(client=self.client)
 
     def lost(self, error: Exception) -> ClusterError:
         """Return in words what `error`, raised while the cluster worked, means."""

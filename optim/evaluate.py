@@ -100,7 +100,7 @@ class Evaluator:
 
     def _far(self, cluster: Cluster, chunks: list[FloatArray], job: Job) -> list[Figures]:
         """Return the figures of each chunk from the workers of `cluster`."""
-        pool = self._workers("dask", n_jobs=-1, client=cluster.client)
+        pool = self._workers(cluster.backend(), n_jobs=-1)
         frequencies, *rest = job
         # Lists, not arrays: joblib would leave an array on one worker, to be lost with it.
         grid = frequencies.tolist()
@@ -114,10 +114,10 @@ class Evaluator:
             raise cluster.lost(error) from error
         return found
 
-    def _workers(self, backend: str, *, n_jobs: int, **options: Any) -> Parallel:
+    def _workers(self, backend: Any, *, n_jobs: int, **options: Any) -> Parallel:
         if self._pool is None:
             with parallel_config(backend, **options):
-                pool = Parallel(n_jobs=n_jobs, batch_size=1, max_nbytes=None)
+                pool = Parallel(n_jobs, batch_size=1, pre_dispatch="all", max_nbytes=None)
             self._pool = self._exit.enter_context(pool)
         return self._pool
 

@@ -111,8 +111,8 @@ def run(spec: Path, options: Options, progress: Progress | None = None) -> Resul
     jobs = options.jobs or cpu_count()
     try:
         with (
+            nullcontext() if options.cluster is None else connected(options.cluster) as cluster,
             Journal(folder / JOURNAL, header, resume=options.resume) as journal,
-            connected(options.cluster) if options.cluster else nullcontext() as cluster,
             Evaluator(requirements, settings.scout, jobs, cluster=cluster) as scout,
             Evaluator(requirements, settings.prove, jobs, cluster=cluster)
             if settings.prove
@@ -138,7 +138,7 @@ def run(spec: Path, options: Options, progress: Progress | None = None) -> Resul
     except KeyboardInterrupt as interrupt:
         again = shlex.join(
             ["apexfront", "search", str(spec), "--out", str(folder), "--resume"]
-            + (["--cluster", options.cluster] if options.cluster else [])
+            + (["--cluster", options.cluster] if options.cluster is not None else [])
         )
         msg = f"interrupted; what was evaluated is safe. Go on with: {again}"
         raise KeyboardInterrupt(msg) from interrupt

@@ -92,7 +92,7 @@ def study(path: Path, options: StudyOptions) -> StudyResult:
     asked = read_study(path)
     folder = folder_of(path, options.out)
     jobs = options.jobs or cpu_count()
-    if options.cluster:
+    if options.cluster is not None:
         with connected(options.cluster) as cluster:
             jobs = options.jobs or cluster.workers
     versions = {name: version(name) for name in LIBRARIES}
@@ -116,7 +116,7 @@ def study(path: Path, options: StudyOptions) -> StudyResult:
                 files = draw_study(folder.path / "pictures", asked, outcomes)
                 progress.say(f"wrote {TABLE} and {len(files)} pictures to {folder.path}")
         except KeyboardInterrupt as interrupt:
-            cluster_too = ("--cluster", options.cluster) if options.cluster else ()
+            cluster_too = ("--cluster", options.cluster) if options.cluster is not None else ()
             words_on = again(asked, folder, *cluster_too)
             msg = f"interrupted; what was evaluated is safe. Go on with: {words_on}"
             raise KeyboardInterrupt(msg) from interrupt

@@ -107,7 +107,7 @@ def work(
     try:
         while waiting or any(slot.task for slot in slots):
             while waiting and free:
-                share = 1 if cluster else max(1, free // len(waiting))
+                share = 1 if cluster is not None else max(1, free // len(waiting))
                 idle = next((slot for slot in slots if slot.task is None), None)
                 if idle is None:
                     idle = _start(folder, cluster)
