@@ -12,7 +12,6 @@ from optim.recommend import front_rows
 from optim.requirements import read_requirements
 from optim.robust import bred, tolerated
 from optim.run import Options, run
-from optim.units import VARIABLES
 from tests.search_specs import SMALL, write
 
 LOOSE = SMALL.replace("resistance_ohm = { min = 45 }", "resistance_ohm = { min = 30 }")
@@ -64,6 +63,20 @@ def test_least_yield_holds_on_the_front_whatever_the_workers(tmp_path: Path) -> 
     assert free.found.front.smallest_margin.min() < front.smallest_margin.min()
 
 
+def test_cut_off_amid_the_yields_and_resumed_ends_the_same(tmp_path: Path) -> None:
+    spec = write(tmp_path, asking("min_yield = 0.5", 'maximise = ["gain"]'))
+    whole, cut = tmp_path / "whole", tmp_path / "cut"
+    run(spec, Options(out=whole, jobs=1, quiet=True))
+    lines = (whole / "journal.jsonl").read_text(encoding="utf-8").splitlines(keepends=True)
+    assert json.loads(lines[-1])["stage"] == "yield"
+    cut.mkdir()
+    torn = "".join(lines[:-1]) + lines[-1][:100]
+    (cut / "journal.jsonl").write_text(torn, encoding="utf-8")
+    run(spec, Options(out=cut, jobs=1, quiet=True, resume=True))
+    for name in ("journal.jsonl", "front.csv"):
+        assert (cut / name).read_bytes() == (whole / name).read_bytes()
+
+
 def test_yield_as_a_goal_is_a_share(tmp_path: Path) -> None:
     spec = write(tmp_path, asking("", 'maximise = ["gain", "yield"]'))
     found = run(spec, Options(out=tmp_path / "run", jobs=1, quiet=True)).found
@@ -90,7 +103,3 @@ def test_yield_out_of_reach_is_not_met_and_says_so(tmp_path: Path) -> None:
     assert 0.0 < relaxed["to"] < 0.9
     assert "Relax min_yield from 0.9" in result.text()
     assert summary["nearest"][0]["tolerance"]["yield"] == pytest.approx(relaxed["to"], abs=2e-3)
-
-
-def test_variables_of_the_space_are_those_of_tolerances(tmp_path: Path) -> None:
-    assert set(read_requirements(write(tmp_path, asking(""))).tolerance) <= set(VARIABLES)
