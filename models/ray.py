@@ -199,28 +199,27 @@ def _sphere_mean(c: Corners, moment_z: WaveArray, moment_s: WaveArray) -> FloatA
     sines = np.sqrt(1.0 - cosines**2)
     steps = count_s // 2
     phi = ((np.arange(steps) + 0.5) * (np.pi / 2.0 / steps)).astype(np.float32)
-    half, s = 0.5 * c.apex_angle[:, None], c.s[:, 0].T[:, :, None]
-    bends = [phi - half, phi + half]
-    phases = [
-        turn(-s * (sines[:, None] * np.cos(bend)[:, None, :]).reshape(n, 1, -1)) for bend in bends
-    ]
-    # Moments along z: (n, θ, n_s), even for the current along z and odd for that along s.
+    # Moments along z, even for the current along z and odd for that along s: (θ, n, 2, n_s).
     height = c.z[0].T[:, :, None] * cosines
-    even = (moment_z @ np.cos(height).astype(np.complex64)).swapaxes(1, 2)
-    odd = 1j * (moment_s @ np.sin(height).astype(np.complex64)).swapaxes(1, 2)
-    facing = np.array([1.0, -1.0], dtype=np.float32)[:, None, None]
-    total = np.zeros(n)
-    for t, (sine, cosine, weight) in enumerate(
-        zip(sines.tolist(), cosines.tolist(), weights.tolist(), strict=True)
-    ):
-        moments = np.stack([even[:, t] * sine, odd[:, t]], axis=1)
-        dipole = far_field(1.0, c.dipole_length, sine, cosine).astype(np.float32)[:, None]
-        ahead = dipole * turn(-(c.spacing[:, None] * sine) * np.cos(phi))
-        theta, cross = np.stack([ahead, ahead.conj()]), np.zeros(1, dtype=np.complex64)
-        for bend, phase in zip(bends, phases, strict=True):
-            plate = _turned(moments, phase[:, :, t * steps : (t + 1) * steps])
-            theta = theta + plate[:, :, 0] - facing * cosine * np.cos(bend) * plate[:, :, 1]
-            cross = cross + np.sin(bend) * plate[:, :, 1]
-        power = theta.real**2 + theta.imag**2 + cross.real**2 + cross.imag**2
-        total += weight / (4.0 * steps) * power.sum(axis=(0, 2), dtype=np.float64)
-    return total
+    even = moment_z @ (sines * np.cos(height)).astype(np.complex64)
+    odd = 1j * (moment_s @ np.sin(height).astype(np.complex64))
+    moments = np.ascontiguousarray(np.stack([even, odd]).transpose(3, 1, 0, 2))
+    moments = np.concatenate([moments, moments.conj()], axis=2)
+    sine, cosine = sines[:, None, None], cosines[:, None, None]
+    dipole = far_field(1.0, c.dipole_length[:, None], sine, cosine).astype(np.float32)
+    ahead = dipole * turn(-(c.spacing[:, None] * sine) * np.cos(phi))
+    # Both halves of the turn, (θ, n, φ) each: toward the front, and φ past 90°.
+    theta, cross = [ahead, ahead.conj()], [np.zeros_like(ahead), np.zeros_like(ahead)]
+    s = c.s[:, 0].T[:, :, None]
+    for bend in (phi - 0.5 * c.apex_angle[:, None], phi + 0.5 * c.apex_angle[:, None]):
+        across = (sine * np.cos(bend)).swapaxes(0, 1).reshape(n, 1, -1)
+        phases = turn(-s * across).reshape(n, count_s, cosines.size, steps)
+        plate = moments @ np.ascontiguousarray(phases.transpose(2, 0, 1, 3))
+        for half, facing in ((0, -1.0), (1, 1.0)):
+            along_z, along_s = plate[:, :, 2 * half], plate[:, :, 2 * half + 1]
+            if half:
+                along_z, along_s = along_z.conj(), along_s.conj()
+            theta[half] = theta[half] + along_z + facing * cosine * np.cos(bend) * along_s
+            cross[half] = cross[half] + np.sin(bend) * along_s
+    power = sum(np.abs(field) ** 2 for field in (*theta, *cross))
+    return np.asarray((power.sum(axis=2).T @ weights) / (4.0 * steps))

@@ -8,7 +8,7 @@ what its edges do to it (`models.edges`, detour of the ray from the dipole's cen
   reflections, adds as if from that rim.
 - the ends z = ±L/2 lie along H: `hard`, one end's wave stopped again by the other end. The current
   along s that an oblique ray leaves at the end belongs to it. What the other plate's ends diffract,
-  H and E along that end, adds likewise. Ends have two corners: Fresnel's tail about them, too.
+  H and E along that end, adds likewise. Ends begin at the apex: Fresnel's tail about it, too.
 - the apex diffracts what images leave out when α is not 180°/n: exact for endless plates, the
   integral of Oberhettinger and of Biot & Tolstoy integrated by parts.
 
@@ -30,9 +30,20 @@ from models.edges import SingleArray, WaveArray, hard, seen_part, shed, soft, sp
 
 __all__ = ["Corners", "currents"]
 
-_APEX_NODES: Final = 6
+_APEX_NODES: Final = 5
 _APEX_REACH: Final = 3.6
 _TINY: Final = 1e-12
+
+
+def _apex_nodes() -> list[tuple[float, float]]:
+    """Return Gauss-Legendre nodes and weights, crowded towards the pole of the kernel at 0."""
+    nodes, weights = np.polynomial.legendre.leggauss(_APEX_NODES)
+    root = (nodes + 1.0) / 2.0
+    steps = _APEX_REACH * root * weights
+    return list(zip((_APEX_REACH * root**2).tolist(), steps.tolist(), strict=True))
+
+
+_APEX: Final = _apex_nodes()
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)
@@ -162,11 +173,8 @@ def _apex(c: Corners) -> tuple[WaveArray, WaveArray]:
     s, z, w, spacing = c.s, c.z, c.plate_width, c.spacing
     p = np.pi / c.apex_angle
     cosine2 = np.cos(np.pi * p) ** 2
-    nodes, weights = np.polynomial.legendre.leggauss(_APEX_NODES)
     total = np.zeros(np.broadcast_shapes(s.shape, z.shape), dtype=np.result_type(s, 1j))
-    for node, weight in zip(nodes.tolist(), weights.tolist(), strict=True):
-        y = _APEX_REACH * ((node + 1.0) / 2.0) ** 2  # crowded towards the pole of the kernel
-        step = _APEX_REACH * (node + 1.0) / 2.0 * weight
+    for y, step in _APEX:
         rise = np.sinh(p * y)
         rho = np.sqrt(spacing**2 + s * s + (2.0 * float(np.cosh(y))) * spacing * s)
         kernel = (2.0 * step * float(np.sinh(y))) * rise / (rise * rise + cosine2) * spacing / rho
@@ -201,7 +209,9 @@ def _own_ends(
         on_edge = shift * before / path
         strength = spread(direct, over) / lobe
         strength *= _lobe(c, half / np.sqrt(on_edge * on_edge + before * before))
-        share = strength * _extent(c, along, before, on_edge + along, over, (c.s, np.abs(behind)))
+        ray = (along, before), (c.s, behind), over
+        share = strength * _beside(0.0, *ray, on_edge + along)
+        share *= _beside(c.plate_width, *ray, c.plate_width - along - on_edge)
         # The wave that runs back from this end stops again at the other one.
         stopped = hard(_root(2.0 * (c.plate_length - behind) * path / over))
         at_ends -= 2.0 * tail(zeta) * stopped * share
@@ -217,26 +227,22 @@ def _lobe(c: Corners, cosine: SingleArray) -> SingleArray:
     return np.asarray((np.cos(half * cosine) - np.cos(half)) / np.sqrt(1.0 - cosine * cosine))
 
 
-def _extent(
-    c: Corners,
-    along: SingleArray,
-    source: SingleArray,
-    on_edge: SingleArray,
-    over: SingleArray,
+def _beside(
+    corner: SingleArray | float,
+    source: tuple[SingleArray, SingleArray],
     point: tuple[SingleArray, SingleArray],
+    over: SingleArray,
+    inside: SingleArray,
 ) -> WaveArray:
-    """Return the part of an endless edge's diffraction that the end from s = 0 to w has.
+    """Return the part of an endless edge's diffraction left when the edge stops at a corner.
 
-    Source and point are given by their places along the edge, `along` and point[0], and their
-    distances from its line, `source` and point[1]; the ray bends at `on_edge`, its path is `over`.
+    Source and point are given by their places along the edge and their distances from its line,
+    `over` is the path over the edge, and `inside` how far inside the corner the ray bends.
     """
-    px, far = point
-    share: WaveArray | float = 1.0
-    for place, sense in ((0.0, 1.0), (c.plate_width, -1.0)):
-        corner_path = np.sqrt((along - place) ** 2 + source * source)
-        corner_path = corner_path + np.sqrt((px - place) ** 2 + far * far)
-        share = share * seen_part(_root(corner_path - over), sense * (on_edge - place))
-    return np.asarray(share)
+    (along, height), (place, far) = source, point
+    path = np.sqrt((along - corner) ** 2 + height * height)
+    path = path + np.sqrt((place - corner) ** 2 + far * far)
+    return seen_part(_root(path - over), inside)
 
 
 def _rim(c: Corners, sources: _Sources, m: int) -> WaveArray:
@@ -321,7 +327,8 @@ def _ends(c: Corners, sources: _Sources, m: int) -> WaveArray:
                 wave *= weight * spread(direct, over)
                 waves.append(wave)
             part = waves[0] + waves[1]
-            part *= _extent(b, ax, before, ax + on_edge, over, (px, after))
+            # These ends begin at the apex; their corners at the rim change next to nothing.
+            part *= _beside(0.0, (ax, before), (px, after), over, ax + on_edge)
             part *= hard(_root(path / over * (np.abs(pn) + np.abs(beyond) - after)))
             total[..., :n] += part
     return total * soft(_root(2.0 * (c.plate_width - c.s)))
