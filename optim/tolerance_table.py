@@ -54,6 +54,6 @@ def spread_rows(spreads: Mapping[str, Spread], asked: Requirements) -> Iterator[
 def spread_words(spreads: Mapping[str, Spread], model: str) -> Iterator[str]:
     """Yield the lines that explain the rows."""
     samples = next(iter(spreads.values())).samples
-    yield "Yield: share of the antennas built that meet everything, deviations uniform within ±; from"
+    yield "Yield: share of the antennas built that meet everything, deviations uniform in ±; from"
     yield f"{samples} solves a design by {model} at the band's points. Exact: the yield if that"
     yield "dimension were held exactly; * marks the one that moves the smallest margin most."

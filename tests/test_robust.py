@@ -40,7 +40,7 @@ def test_recommended_designs_say_what_tolerances_do(tmp_path: Path) -> None:
     assert next(iter(entry["dimensions"])) == entry["matters_most"]
     assert entry["dimensions"]["spacing_mm"]["plus_minus"] == 4.0
     assert "spacing_mm exact" in result.text()
-    assert "deviations uniform" in result.text()
+    assert "deviations uniform in ±" in result.text()
 
 
 def test_least_yield_holds_on_the_front_whatever_the_workers(tmp_path: Path) -> None:
