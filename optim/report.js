@@ -6,6 +6,7 @@
   const count = data.roles.length;
   const state = { shown: data.first, held: -1, box: null };
   const views = {};
+  const ERRORS_ONLY = 1;
 
   const element = (name, text, attributes = {}) => {
     const made = document.createElement(name);
@@ -167,7 +168,7 @@
     const specification = data.charts[name];
     specification.datasets = { ...(specification.datasets || {}), ...sets };
     const made = await vegaEmbed(byId(id), specification, {
-      mode: "vega-lite", logLevel: vega.Error, renderer: "svg", actions: false, ast: true, defaultStyle: false,
+      mode: "vega-lite", logLevel: ERRORS_ONLY, renderer: "svg", actions: false, ast: true, defaultStyle: false,
     });
     views[name] = made.view;
   }

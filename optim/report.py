@@ -169,7 +169,7 @@ def _data(
                 "unit": q.unit,
                 "decimals": q.decimals,
                 "values": [
-                    round(v, q.decimals + 1) if abs(v) < 1e300 else None for v in q.values.tolist()
+                    round(v, q.decimals + 4) if abs(v) < 1e300 else None for v in q.values.tolist()
                 ],
             }
             for q in shown
@@ -240,8 +240,8 @@ def _stills(result: Result, content: dict[str, Any], went: list[Any]) -> dict[st
         if rows
     ]
     differences = [
-        {"figure": f"{words} ({unit})", "difference": round(float(value) / step, 4)}
-        for words, unit, step, values in compared(result, content)
+        {"figure": words, "difference": round(float(value) / step, 4)}
+        for words, _, step, values in compared(result, content)
         for value in values
     ]
     spread = "Difference of scout and proof, one tick a design"

@@ -137,7 +137,7 @@ def front_chart(across: str, upwards: str, colour: str) -> Spec:
         x=x,
         y=y,
         shape=alt.Shape(
-            "order:O", scale=alt.Scale(domain=list(range(6)), range=_SHAPES), legend=None
+            "order:N", scale=alt.Scale(domain=list(range(6)), range=_SHAPES), legend=None
         ),
     )
     # Neighbours on the front often both have a role: their names stand at different heights.
@@ -346,18 +346,18 @@ def role_cuts_chart(
 def difference_chart(rows: Sequence[Mapping[str, Any]]) -> Spec:
     """Return the spread of scout minus proof in steps; rows of `figure` and `difference`."""
     order = list(dict.fromkeys(row["figure"] for row in rows))
-    y = alt.Y("figure:N", sort=order, title=None, axis=alt.Axis(labelLimit=200))
-    x = alt.X("difference:Q", title="scout − proof, in steps (1 dB, 3°, …)")
+    y = alt.Y("figure:N", sort=order, title=None, axis=alt.Axis(labelLimit=180))
+    x = alt.X("difference:Q", title="scout − proof, in steps")
     base = _named("designs")
     chart = alt.layer(
         base.mark_tick(color=MARKS[0].colour, opacity=0.5, thickness=1.5).encode(x=x, y=y),
         base.mark_point(filled=True, color=BLACK, shape="diamond", size=60).encode(
-            x=alt.X("median(difference):Q", title="scout − proof, in steps (1 dB, 3°, …)"), y=y
+            x=alt.X("median(difference):Q", title="scout − proof, in steps"), y=y
         ),
         _named("none").mark_rule(color=GREY).encode(x=x),
     )
     data = {"designs": rows, "none": [{"difference": 0.0}]}
-    return _finished(chart, data, width=330, height=26 * len(order))
+    return _finished(chart, data, width=210, height=26 * len(order))
 
 
 def course_chart(courses: Sequence[Course], quantity: str, title: str) -> Spec:

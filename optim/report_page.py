@@ -12,6 +12,7 @@ from typing import Any, Final
 import numpy as np
 
 from models import MODELS
+from optim.analysis import FIGURES
 from optim.cautions import cautions
 from optim.history import Course
 from optim.margins import MISSING
@@ -20,6 +21,7 @@ from optim.precheck import findings
 from optim.report_data import BAND_FIGURES
 from optim.report_quantities import (
     MASKS,
+    SIZE_WORDS,
     Quantity,
     asked_words,
     limit_words,
@@ -191,7 +193,8 @@ def compared(
 def _cell(limit: Limit, margin: float) -> dict[str, Any]:
     known = abs(margin) < MISSING * limit.scale
     value = limit.value + (margin if limit.sense == "min" else -margin)
-    reached = f"{-margin:+.2f} dB" if limit.figure in MASKS else f"{value:.4g}"
+    decimals = (FIGURES | SIZE_WORDS).get(limit.figure, ("", "", 2))[2]
+    reached = f"{-margin:+.2f} dB" if limit.figure in MASKS else f"{value:.{decimals}f}"
     return {
         "reached": minus(reached) if known else "–",
         "margin": minus(f"{margin:+.0f}" if abs(margin) >= 99.5 else f"{margin:+.2g}")
@@ -230,7 +233,7 @@ def _goal_rows(result: Result, shown: list[Quantity]) -> list[dict[str, Any]]:
         quantity = next((q for q in shown if q.key in near), None)
         if quantity is not None:
             cells = [quantity.text(row) for row in role_words(result).values()]
-            words = "as small as can be" if goal.sense == "min" else "as large as can be"
+            words = "minimise" if goal.sense == "min" else "maximise"
             found.append({"words": f"goal: {quantity.words}", "asked": words, "cells": cells})
     return found
 

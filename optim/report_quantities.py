@@ -22,7 +22,7 @@ from optim.result import Result
 from optim.tables import DIMENSION_KEYS
 from optim.units import to_file
 
-__all__ = ["MASKS", "Quantity", "asked_words", "limit_words", "minus", "quantities"]
+__all__ = ["MASKS", "SIZE_WORDS", "Quantity", "asked_words", "limit_words", "minus", "quantities"]
 
 SIZE_WORDS: Final = {
     "width": ("box width", "mm", 1),
