@@ -50,7 +50,7 @@ _MET: Final = -1e-6
 """A margin from here on is met: exactly on the limit is inside."""
 
 _ENDS: Final = (5.0, 95.0)
-"""Shades end at these percentiles, so that what is far off does not flatten the rest."""
+"""Shades end at these percentiles (or at the design), so that what is far off flattens nothing."""
 
 
 def in_file_units(variable: str, values: FloatArray) -> FloatArray:
@@ -166,6 +166,8 @@ def _panel(
     axes.set_title(label, pad=10.0)  # room for a star on the upper edge
     axes.grid(visible=False)
     low, high = np.percentile(values[np.isfinite(values)], _ENDS)
+    here = values[np.ix_(chart.y == _of(chart, chart.upwards), chart.x == _of(chart, chart.across))]
+    low, high = min(low, *here.ravel()), max(high, *here.ravel())
     shade = axes.pcolormesh(
         x, y, values, cmap=_SHADES, shading="nearest", vmin=low, vmax=high, rasterized=True
     )
@@ -179,12 +181,17 @@ def _panel(
             x, y, border, levels=[_MET], colors=[_EDGE], linewidths=2.4, linestyles="solid"
         )
     place = [
-        in_file_units(name, chart.at[[VARIABLES.index(name)]]).tolist()
+        in_file_units(name, np.array([_of(chart, name)])).tolist()
         for name in (chart.across, chart.upwards)
     ]
     axes.add_line(_star(place[0], place[1]))
     axes.set(xlim=(x[0], x[-1]), ylim=(y[0], y[-1]))
     axes.locator_params(nbins=5)
+
+
+def _of(chart: Map, name: str) -> float:
+    """Return a dimension of the design that the map goes through, m or radians."""
+    return float(chart.at[VARIABLES.index(name)])
 
 
 def _ruled_out(axes: Axes, x: FloatArray, y: FloatArray, margin: FloatArray) -> None:

@@ -68,7 +68,9 @@ def draw_prices(
             )
             note = f"Smallest designs found by short searches, judged by {model}."
             if flat:
-                note += "\n" + plain(f"No effect within a step: {flat}", width=175.0, lines=3)
+                some = any(np.isfinite(price.asked) for price in found)
+                fact = "No effect within a step" if some else "No design found, a step either way"
+                note += "\n" + plain(f"{fact}: {flat}", width=175.0, lines=3)
             legend.set_title(note, FontProperties(size=TYPE))
             legend.set_alignment("left")
     return figure

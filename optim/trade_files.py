@@ -101,6 +101,11 @@ def _words(found: Trade) -> Iterator[str]:
         yield f"The maps go through the design called {found.through.replace('_', ' ')}."
     else:
         yield "No design was found that meets everything; the maps go through the nearest one."
+        for price in found.prices:
+            if math.isfinite(price.at(-1.0)):
+                yield f"With {price.limit.label} eased to {price.value(-1.0):.4g} there is one."
+            elif math.isfinite(price.dropped):
+                yield f"Without {price.limit.label} there is one."
     yield ""
     yield f"Change of the {size} as one requirement is moved by its step, the others kept:"
     yield from _table(found.prices, scale, unit)
