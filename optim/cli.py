@@ -18,6 +18,7 @@ from pathlib import Path
 from typing import Annotated, Final, ParamSpec
 
 import typer
+from joblib import cpu_count
 from rich.console import Console
 
 from models import MODELS
@@ -188,7 +189,7 @@ def search(
     quiet: Annotated[bool, typer.Option("--quiet", help="No progress, no messages.")] = False,
 ) -> int:
     """Find the smallest antennas that meet the requirements."""
-    from optim.papers import write_run  # matplotlib and pymoo are slow to start
+    from optim.finish import finish  # matplotlib and pymoo are slow to start
     from optim.run import DEFAULT_FOLDER, Options, run
 
     options = Options(
@@ -203,10 +204,24 @@ def search(
     )
     result = run(spec, options)
     print(result.text())
-    written = write_run(out or Path(DEFAULT_FOLDER) / spec.stem, result)
-    if written and not quiet:
-        message(f"wrote drawings, data sheets and pattern data to {written[0].parents[1]}")
+    report = finish(out or Path(DEFAULT_FOLDER) / spec.stem, jobs or cpu_count())
+    if not quiet:
+        message(f"wrote papers, pictures and {report}")
     return DONE if result.met else NOT_MET
+
+
+@app.command("report")
+@step
+def report_of(
+    folder: Annotated[
+        Path, typer.Argument(metavar="DIR", help="Folder of a finished search.", show_default=False)
+    ],
+) -> int:
+    """Make the report of a finished search again from its data, papers and pictures as well."""
+    from optim.finish import finish  # matplotlib and pymoo are slow to start
+
+    print(finish(folder, cpu_count()))
+    return DONE
 
 
 @app.command("study")

@@ -1,6 +1,6 @@
 """A finished run on disk: what was asked and what was found, bit for bit, to report it again.
 
-requirements.toml is the text of the file that was asked for; outcome.json holds the settings of
+requirements.toml is the text of the file that was asked for; found.json holds the settings of
 the run and every design found with the numbers it was judged by (64-bit floats as in the journal).
 Designs are rows of the five variables, SI and radians.
 """
@@ -27,7 +27,7 @@ from optim.tolerance import Influence, Spread
 
 __all__ = ["FILE", "REQUIREMENTS", "read_outcome", "write_outcome"]
 
-FILE: Final = "outcome.json"
+FILE: Final = "found.json"
 REQUIREMENTS: Final = "requirements.toml"
 FORMAT: Final = 1
 

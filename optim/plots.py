@@ -1,6 +1,6 @@
-"""The pictures of a finished search: front, sizes, band curves, cuts and drawing of each design.
+"""The pictures of a finished search: front, sizes, band curves, cuts of each design.
 
-Everything goes into one folder as SVG (to print) and PNG (to look at). Axes follow the goals: a
+Everything goes into one folder as SVG. Axes follow the goals: a
 size across, a figure upwards, a third goal by colour. Values are the worst over the band.
 """
 
@@ -15,7 +15,7 @@ from matplotlib.figure import Figure
 from models import Figures, radiate
 from models.conventions import FloatArray
 from models.figures import figures_of_merit
-from optim.drawing import draw_sheet, draw_sketches
+from optim.drawing import draw_sketches
 from optim.margins import MISSING, SIZES
 from optim.plot_band import draw_band
 from optim.plot_cuts import draw_cuts
@@ -98,14 +98,9 @@ def draw_run(folder: Path, result: Result) -> list[Path]:
                 terms=requirements.terms,
                 model=result.found.model,
             )
-            pictures[f"{name}_drawing"] = draw_sheet(
-                reflectors[row],
-                title=requirements.title,
-                name=name,
-                build=requirements.build,
-                band_hz=(requirements.band.low_hz, requirements.band.high_hz),
-            )
-    return [path for name, picture in pictures.items() for path in _write(picture, folder / name)]
+    for name, picture in pictures.items():
+        save(picture, folder / f"{name}.svg")
+    return [folder / f"{name}.svg" for name in pictures]
 
 
 def front_of(result: Result) -> Figure:
@@ -165,10 +160,3 @@ def _values(name: str, result: Result, judged: Judged, requirements: Requirement
             getattr(result.space.reflectors(judged.designs), name) / SIZES[name], dtype=np.float64
         )
     return np.asarray(judged.worst[:, Figures.names().index(_QUANTITIES[name].figure)])
-
-
-def _write(picture: Figure, stem: Path) -> list[Path]:
-    paths = [stem.with_suffix(suffix) for suffix in (".svg", ".png")]
-    for path in paths:
-        save(picture, path)
-    return paths

@@ -23,8 +23,8 @@ from markupsafe import Markup
 
 from optim import report_charts as charts
 from optim.history import courses
-from optim.outcome import read_outcome, write_outcome
-from optim.report_data import compute, read_data, write_data
+from optim.outcome import read_outcome
+from optim.report_data import read_data
 from optim.report_page import (
     band_figures,
     cards,
@@ -39,7 +39,7 @@ from optim.report_quantities import Quantity, asked_words, limit_words, quantiti
 from optim.report_sketch import scale_of, sketch
 from optim.result import Result
 
-__all__ = ["FILE", "embedded", "make_report", "report_run"]
+__all__ = ["FILE", "embedded", "make_report"]
 
 FILE: Final = "report.html"
 JOURNAL: Final = "journal.jsonl"
@@ -56,29 +56,6 @@ GROUPS: Final = {
 
 _AT_THE_TOP: Final = ("front.csv", "summary.json", "requirements.toml", JOURNAL)
 _TRADE: Final = ("trade.txt", "trade/trade.txt")
-
-
-def report_run(folder: Path, result: Result, *, versions: Mapping[str, str], jobs: int = 1) -> Path:
-    """Keep what a report of `result` needs in `folder`, and write the report; return its path.
-
-    Parameters
-    ----------
-    folder : Path
-        The run's, with its journal.
-    result : Result
-    versions : mapping
-        Library to version.
-    jobs : int
-        Processes that compute patterns.
-
-    Raises
-    ------
-    OSError
-        Where a file cannot be written.
-    """
-    write_outcome(folder, result, versions)
-    write_data(folder, compute(result, jobs))
-    return make_report(folder)
 
 
 def make_report(folder: Path) -> Path:

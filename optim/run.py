@@ -23,6 +23,7 @@ from optim.evaluate import Evaluator
 from optim.faults import Fault, SpecError
 from optim.journal import Header, Journal, read_header
 from optim.margins import Judge
+from optim.outcome import write_outcome
 from optim.precheck import blind_spots
 from optim.progress import Progress
 from optim.referee import columns
@@ -134,6 +135,7 @@ def run(spec: Path, options: Options, progress: Progress | None = None) -> Resul
                     "versions": header.versions,
                 },
             )
+            write_outcome(folder, result, header.versions)
             progress.say(f"wrote front.csv, summary.json and design files to {folder}")
     except KeyboardInterrupt as interrupt:
         again = shlex.join(

@@ -141,8 +141,8 @@ def test_files_of_a_run(tmp_path: Path) -> None:
     assert len(result.found.front) == 1
     files = draw_run(tmp_path / "pictures", result)
     _, rows = result.shown()
-    stems = {"front", "sizes", "band"} | {f"{r}_{k}" for r in rows for k in ("cuts", "drawing")}
-    assert {f.name for f in files} == {f"{s}.{e}" for s in stems for e in ("svg", "png")}
+    stems = {"front", "sizes", "band"} | {f"{role}_cuts" for role in rows}
+    assert {f.name for f in files} == {f"{stem}.svg" for stem in stems}
     assert sorted(files) == sorted((tmp_path / "pictures").iterdir())
 
 
@@ -154,4 +154,4 @@ def test_a_run_without_any_design_still_has_its_front(tmp_path: Path) -> None:
         result.space,
         Found(front=none, nearest=none, relaxed=none, model="image", evaluations={}),
     )
-    assert {f.name for f in draw_run(tmp_path / "pictures", empty)} == {"front.svg", "front.png"}
+    assert {f.name for f in draw_run(tmp_path / "pictures", empty)} == {"front.svg"}
