@@ -72,7 +72,7 @@ def test_nothing_meets_the_requirements(tmp_path: Path) -> None:
 
 
 def test_starts_from_a_finished_search_of_the_same_file(tmp_path: Path) -> None:
-    spec = write_spec(tmp_path, SPEC)
+    spec = write_spec(tmp_path, SPEC.replace("generations = 8", "generations = 2"))
     asked = read_requirements(spec)
     assert known_designs(tmp_path, asked).shape == (0, 5)
     run = ["search", str(spec), "--out", str(tmp_path / "run"), "--jobs", "1", "--quiet"]
