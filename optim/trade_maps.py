@@ -20,7 +20,7 @@ from optim.units import VARIABLES
 
 __all__ = ["POINTS", "Map", "chosen_pairs", "map_of"]
 
-POINTS: Final = 41
+POINTS: Final = 31
 """Along each axis."""
 
 PAIRS: Final = (
