@@ -17,7 +17,6 @@ from optim.cluster import connected
 from optim.run import DEFAULT_FOLDER, LIBRARIES
 from optim.study_file import Study, read_study
 from optim.study_folder import DONE, Outcome, StudyFolder, write_whole
-from optim.study_pictures import draw_study
 from optim.study_progress import StudyProgress
 from optim.study_slots import Done, Task, work
 from optim.study_status import again, status_text
@@ -113,6 +112,8 @@ def study(path: Path, options: StudyOptions) -> StudyResult:
                     else:
                         progress.told(event)
                 write_whole(folder.path / TABLE, study_csv(asked, outcomes))
+                from optim.study_pictures import draw_study  # matplotlib is slow to start
+
                 files = draw_study(folder.path / "pictures", asked, outcomes)
                 progress.say(f"wrote {TABLE} and {len(files)} pictures to {folder.path}")
         except KeyboardInterrupt as interrupt:

@@ -130,13 +130,14 @@ def draw_fronts(study: Study, outcomes: Mapping[int, Outcome]) -> Figure:
 
 def label_of(name: str) -> str:
     """Return the axis label of a factor: words and unit of `require.gain_dbi.min` and its like."""
-    _, _, key = name.partition(".")
-    words, _, bound = (key or name).partition(".")
-    unit = max((u for u in UNITS if words.endswith(f"_{u}")), key=len, default=None)
-    if unit is not None:
-        words = words.removesuffix(f"_{unit}")
-    text = " ".join([words.replace("_", " "), *bound.replace("_", " ").split()])
-    return f"{text} ({UNITS[unit]})" if unit is not None else text
+    table, *parts = name.split(".")
+    words, shown = [], ""
+    for part in parts or [table]:
+        unit = max((u for u in UNITS if part.endswith(f"_{u}")), key=len, default=None)
+        if unit is not None:
+            shown = f" ({UNITS[unit]})"
+        words += part.removesuffix(f"_{unit}").split("_")
+    return " ".join(words) + shown
 
 
 def _series(study: Study, shown: Factor) -> Factor | None:

@@ -20,6 +20,8 @@ TESTED_ELSEWHERE = {
     "optim/faults.py": "what test_requirements.py and test_designfile.py refuse",
     "optim/overview.py": "the text that test_cli.py reads",
     "optim/schema.py": "what test_requirements.py and test_designfile.py read",
+    "optim/study_status.py": "the words that test_study.py reads while a study runs",
+    "optim/study_table.py": "the tables that test_study.py reads",
     "optim/tolerance_table.py": "rows and object that test_robust.py reads",
     "optim/trade_files.py": "files and words that test_trade.py reads",
     "optim/units.py": "round trips in test_designfile.py",
