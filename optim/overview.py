@@ -13,12 +13,23 @@ from optim.requirements import Requirements
 from optim.space import DesignSpace
 from optim.units import FILE_KEYS, VARIABLES, to_file
 
-__all__ = ["overview"]
+__all__ = ["overview", "understood"]
 
 
 def overview(
     requirements: Requirements, space: DesignSpace, findings: list[Finding]
 ) -> Iterator[str]:
+    """Yield the lines of `understood`, who can judge them, and what is ruled out."""
+    yield from understood(requirements, space)
+    yield from _block("models", _models(requirements, space))
+    yield ""
+    yield from _verdict(findings)
+    if any(limit.figure == "wind_load" for limit in requirements.limits):
+        yield "Wind load is the plates' drag in a steady wind. Ice, gusts and the mast are not in"
+        yield "it; the codes of the place are binding."
+
+
+def understood(requirements: Requirements, space: DesignSpace) -> Iterator[str]:
     """Yield the lines that tell a reader how the requirements were taken."""
     r, band = requirements, requirements.band
     yield r.title
@@ -33,12 +44,6 @@ def overview(
     yield from _block("ranges", _ranges(requirements, space))
     yield from _block("steps", _steps(space))
     yield from _block("tolerance", _tolerance(requirements))
-    yield from _block("models", _models(requirements, space))
-    yield ""
-    yield from _verdict(findings)
-    if any(limit.figure == "wind_load" for limit in r.limits):
-        yield "Wind load is the plates' drag in a steady wind. Ice, gusts and the mast are not in"
-        yield "it; the codes of the place are binding."
 
 
 _WORDS = {"min": "minimise", "max": "maximise"}

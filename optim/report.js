@@ -96,30 +96,32 @@
 
   const series = () => [["shown", state.shown], ["held", state.held]].filter(([, row]) => row >= 0);
 
-  function cutRows() {
+  function cutRows(plane) {
     const rows = [];
     for (const [name, row] of series()) {
-      for (const plane of ["H", "E"]) {
-        const levels = data.cuts[plane][row].map((tenths) => (tenths === null ? null : tenths / 10));
-        levels.forEach((level, i) => {
-          const angle = (180 * i) / (levels.length - 1);
-          if (level === null) return;
-          rows.push({ series: name, plane, angle, level });
-          if (i > 0 && i < levels.length - 1) rows.push({ series: name, plane, angle: -angle, level });
-        });
-      }
+      const levels = data.cuts[plane][row];
+      levels.forEach((tenths, i) => {
+        if (tenths === null) return;
+        const angle = (180 * i) / (levels.length - 1), level = tenths / 10;
+        rows.push({ series: name, angle, level });
+        if (i > 0 && i < levels.length - 1) rows.push({ series: name, angle: -angle, level });
+      });
     }
     return rows;
   }
 
-  function bandRows() {
+  function bandRows(figure) {
     const rows = [];
     for (const [name, row] of series()) {
-      for (const [figure, values] of Object.entries(data.band)) {
-        values[row].forEach((value, i) => rows.push({ series: name, figure, mhz: data.mhz[i], value }));
-      }
+      data.band[figure][row].forEach((value, i) => rows.push({ series: name, mhz: data.mhz[i], value }));
     }
     return rows;
+  }
+
+  // A picture's name is its kind and what it shows: polar_h, cut_e, band_gain_dbi.
+  function rowsOf(name) {
+    const [kind, ...rest] = name.split("_");
+    return kind === "band" ? ["band", bandRows(rest.join("_"))] : ["cut", cutRows(rest[0])];
   }
 
   function tables(row) {
@@ -159,8 +161,7 @@
     if (views.front) views.front.signal("picked", row + 1).runAsync();
     for (const [name, view] of Object.entries(views)) {
       if (name === "front") continue;
-      const set = name.startsWith("band") ? "band" : "cut";
-      view.data(set, set === "band" ? bandRows() : cutRows()).runAsync();
+      view.data(...rowsOf(name)).runAsync();
     }
   }
 
@@ -188,12 +189,9 @@
       state.box = box && box.x && box.y ? [box.x, box.y].map((ends) => [Math.min(...ends), Math.max(...ends)]) : null;
       list();
     });
-    const cut = cutRows(), band = bandRows();
-    for (const plane of ["h", "e"]) {
-      await draw(`polar_${plane}`, `polar-${plane}`, { cut });
-      await draw(`cut_${plane}`, `cut-${plane}`, { cut });
+    for (const name of Object.keys(data.charts)) {
+      if (name !== "front") await draw(name, name.replace("_", "-"), Object.fromEntries([rowsOf(name)]));
     }
-    for (const name of Object.keys(data.band)) await draw(`band_${name}`, `band-${name}`, { band });
     show();
     document.body.dataset.ready = "yes";
   }

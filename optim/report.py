@@ -133,7 +133,7 @@ def _data(
     }
     for name, label in figures.items():
         asked = [(asked_words(limit), limit.value) for limit in limits if limit.figure == name]
-        drawn[f"band_{name}"] = charts.band_chart(name, label, asked)
+        drawn[f"band_{name}"] = charts.band_chart(label, asked)
     return {
         "first": next(iter(rows.values()), 0),
         "roles": role_rows(result),
@@ -154,7 +154,7 @@ def _data(
         "limits": [{"words": limit_words(x), "asked": asked_words(x)} for x in limits],
         "margins": [margin_cells(result, row) for row in range(len(judged))],
         "limit_lines": list(_limit_lines(result, shown)),
-        "cuts": {"H": content["h_tenths_db"], "E": content["e_tenths_db"]},
+        "cuts": {"h": content["h_tenths_db"], "e": content["e_tenths_db"]},
         "mhz": content["mhz"],
         "band": {name: content["band"][name] for name in figures},
         "sketches": sketches,

@@ -9,6 +9,7 @@ from __future__ import annotations
 
 import re
 from collections.abc import Mapping, Sequence
+from functools import cache
 from typing import Any, Final
 
 import altair as alt
@@ -73,6 +74,11 @@ def _finished(chart: Any, data: Mapping[str, Rows] | None = None, **size: Any) -
     spec: Spec = chart.to_dict(validate=False)
     spec["datasets"] = {name: [dict(row) for row in rows] for name, rows in (data or {}).items()}
     return spec
+
+
+def _titled(spec: Spec, title: str, data: Mapping[str, Rows]) -> Spec:
+    """Return a specification with a title, and with more data."""
+    return {**spec, "title": title, "datasets": {**spec["datasets"], **data}}
 
 
 def _named(name: str) -> alt.Chart:
@@ -215,8 +221,13 @@ def _series(domain: Sequence[str]) -> dict[str, Any]:
 
 def cut_chart(plane: str, envelope: Envelope | None) -> Spec:
     """Return the rectangular picture of one cut; `envelope` in degrees and dB."""
-    chart = _flat(plane, SERIES, envelope)
-    return _finished(chart, _beside(envelope), width="container", height=210)
+    flat = _finished_flat(tuple(SERIES), bool(envelope), width="container", height=210)
+    return _titled(flat, f"{plane}-plane", _beside(envelope))
+
+
+@cache
+def _finished_flat(domain: tuple[str, ...], enveloped: bool, **size: Any) -> Spec:  # noqa: FBT001
+    return _finished(_flat(domain, enveloped=enveloped), **size)
 
 
 def _beside(envelope: Envelope | None) -> dict[str, Rows]:
@@ -225,11 +236,7 @@ def _beside(envelope: Envelope | None) -> dict[str, Rows]:
     return {"half": [{"level": HALF_POWER_DB}], "envelope": corners}
 
 
-def _flat(
-    plane: str,
-    domain: Sequence[str],
-    envelope: Envelope | None,
-) -> Any:
+def _flat(domain: Sequence[str], *, enveloped: bool) -> Any:
     x = alt.X(
         "angle:Q",
         title="degrees off boresight",
@@ -237,28 +244,27 @@ def _flat(
         axis=alt.Axis(values=list(range(0, 181, 30))),
     )
     y = alt.Y("level:Q", title="dB", scale=alt.Scale(**_LEVELS))
-    lines = (
-        _named("cut")
-        .transform_filter(f"datum.plane == '{plane}'")
-        .mark_line(strokeWidth=2, clip=True)
-        .encode(x=x, y=y, **_series(domain))
-    )
+    lines = _named("cut").mark_line(strokeWidth=2, clip=True).encode(x=x, y=y, **_series(domain))
     half = _named("half").mark_rule(color=GREY, strokeDash=[2, 2]).encode(y=y)
     layers = [half, lines]
-    if envelope:
+    if enveloped:
         # Straight between its points, as the requirement is judged.
         layers.append(_named("envelope").mark_line(color=_LIMIT, strokeWidth=1.6).encode(x=x, y=y))
-    return alt.layer(*layers, title=f"{plane}-plane")
+    return alt.layer(*layers)
 
 
 def polar_chart(plane: str) -> Spec:
     """Return the polar picture of one cut, boresight upwards."""
+    return _titled(_polar(), f"{plane}-plane", {})
+
+
+@cache
+def _polar() -> Spec:
     radius, angle = f"clamp(1 - datum.level / {FLOOR_DB}, 0, 1.05)", "datum.angle * PI / 180"
     x = alt.X("x:Q", axis=None, scale=alt.Scale(domain=[-1.12, 1.12], nice=False))
     y = alt.Y("y:Q", axis=None, scale=alt.Scale(domain=[-1.12, 1.12], nice=False))
     line = (
         _named("cut")
-        .transform_filter(f"datum.plane == '{plane}'")
         .transform_calculate(r=radius, a=angle)
         .transform_calculate(x="datum.r * sin(datum.a)", y="datum.r * cos(datum.a)")
         .mark_line(strokeWidth=2)
@@ -272,7 +278,6 @@ def polar_chart(plane: str) -> Spec:
         line,
         _named("degrees").mark_text(fontSize=10, color=BLACK).encode(x=x, y=y, text="words:N"),
         _named("levels").mark_text(fontSize=10, color=GREY, dx=12).encode(x=x, y=y, text="words:N"),
-        title=f"{plane}-plane",
     )
     spec = _finished(chart, _web(), width=250, height=250)
     spec["config"]["view"] = {"stroke": None}
@@ -303,15 +308,21 @@ def _web() -> dict[str, Rows]:
     }
 
 
-def band_chart(name: str, label: str, limits: Sequence[tuple[str, float]]) -> Spec:
+def band_chart(label: str, limits: Sequence[tuple[str, float]]) -> Spec:
     """Return the curve of one figure over the band; `limits` are words and value."""
+    asked = [{"words": words, "value": value} for words, value in limits]
+    return _titled(_band(), label, {"asked": asked})
+
+
+@cache
+def _band() -> Spec:
     x = alt.X(
         "mhz:Q", title="MHz", scale=alt.Scale(zero=False, nice=False), axis=alt.Axis(tickCount=4)
     )
     y = alt.Y("value:Q", title=None, scale=alt.Scale(zero=False, padding=8))
     lines = (
         _named("band")
-        .transform_filter(f"datum.figure == '{name}' && isValid(datum.value)")
+        .transform_filter("isValid(datum.value)")
         .mark_line(strokeWidth=2, point={"size": 22, "filled": True})
         .encode(x=x, y=y, **_series(SERIES))
     )
@@ -322,10 +333,8 @@ def band_chart(name: str, label: str, limits: Sequence[tuple[str, float]]) -> Sp
             y=y, text="words:N"
         ),
         lines,
-        title=label,
     )
-    lines_asked = [{"words": words, "value": value} for words, value in limits]
-    return _finished(chart, {"asked": lines_asked}, width="container", height=130)
+    return _finished(chart, width="container", height=130)
 
 
 def role_cuts_chart(
@@ -335,12 +344,12 @@ def role_cuts_chart(
 ) -> Spec:
     """Return one cut of every recommended design, role to levels every 2°, dB."""
     rows = [
-        {"series": role, "plane": plane, "angle": 2 * i, "level": level}
+        {"series": role, "angle": 2 * i, "level": level}
         for role, levels in cuts.items()
         for i, level in enumerate(levels)
     ]
-    chart = _flat(plane, list(cuts), envelope)
-    return _finished(chart, {"cut": rows, **_beside(envelope)}, width=330, height=210)
+    flat = _finished_flat(tuple(cuts), bool(envelope), width=330, height=210)
+    return _titled(flat, f"{plane}-plane", {"cut": rows, **_beside(envelope)})
 
 
 def difference_chart(rows: Sequence[Mapping[str, Any]]) -> Spec:

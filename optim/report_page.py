@@ -16,8 +16,7 @@ from optim.analysis import FIGURES
 from optim.cautions import cautions
 from optim.history import Course
 from optim.margins import MISSING
-from optim.overview import overview
-from optim.precheck import findings
+from optim.overview import understood
 from optim.report_data import BAND_FIGURES
 from optim.report_quantities import (
     MASKS,
@@ -125,9 +124,7 @@ def page(
         "requirements": _requirement_rows(result),
         "goals": _goal_rows(result, shown),
         "relaxations": list(result.relaxations()),
-        "understood": "\n".join(
-            overview(requirements, result.space, findings(requirements, result.space))
-        ),
+        "understood": "\n".join(understood(requirements, result.space)),
         "centre": f"{content['centre_mhz']:.6g}",
         "numbers": _numbers(shown, rows),
         "tolerance": tolerance,
