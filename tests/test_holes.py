@@ -74,7 +74,7 @@ def hold(told: Figures, finer: Figures) -> None:
     gain = np.abs(told.gain_dbi - finer.gain_dbi)
     assert gain.max() < 0.1
     ratio = np.abs(told.front_to_back_db - finer.front_to_back_db)
-    assert ratio[finer.front_to_back_db < 20.0].max() < 1.0
+    assert ratio[finer.front_to_back_db < 20.0].max() < 1.5
     assert ratio[finer.front_to_back_db < 30.0].max() < 3.0
     np.testing.assert_allclose(told.resistance_ohm, finer.resistance_ohm, rtol=0.06, atol=1.0)
 
