@@ -308,13 +308,14 @@ def trade_off(
             help=f"One of {', '.join(MODELS)}; the one with the last word if left out.",
         ),
     ] = None,
+    cluster: Cluster = None,
     quiet: Annotated[bool, typer.Option("--quiet", help="No progress, no messages.")] = False,
 ) -> int:
     """Show how the figures move, and what each requirement costs in size."""
     from optim.trade import Options, trade  # pymoo and matplotlib are slow to start
     from optim.trade_files import words, write
 
-    found = trade(spec, Options(out=out, jobs=jobs, model=model, quiet=quiet))
+    found = trade(spec, Options(out=out, jobs=jobs, model=model, quiet=quiet, cluster=cluster))
     folder = out or Path("runs") / f"{spec.stem}-trade"
     files = write(folder, found)
     print(words(found))

@@ -112,7 +112,7 @@ def run(spec: Path, options: Options, progress: Progress | None = None) -> Resul
     jobs = options.jobs or cpu_count()
     try:
         with (
-            nullcontext() if options.cluster is None else connected(options.cluster) as cluster,
+            connected(options.cluster) as cluster,
             Journal(folder / JOURNAL, header, resume=options.resume) as journal,
             Evaluator(requirements, settings.scout, jobs, cluster=cluster) as scout,
             Evaluator(requirements, settings.prove, jobs, cluster=cluster)

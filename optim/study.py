@@ -90,10 +90,8 @@ def study(path: Path, options: StudyOptions) -> StudyResult:
     """
     asked = read_study(path)
     folder = folder_of(path, options.out)
-    jobs = options.jobs or cpu_count()
-    if options.cluster is not None:
-        with connected(options.cluster) as cluster:
-            jobs = options.jobs or cluster.workers
+    with connected(options.cluster) as cluster:
+        jobs = options.jobs or (cluster.workers if cluster else cpu_count())
     versions = {name: version(name) for name in LIBRARIES}
     with folder.opened(asked, versions, resume=options.resume):
         known = {run.number: folder.outcome(run.number) for run in asked.runs}

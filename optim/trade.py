@@ -22,6 +22,7 @@ from joblib import cpu_count
 from models import Figures
 from models.conventions import FloatArray
 from optim.archive import Judged, diverse
+from optim.cluster import connected
 from optim.evaluate import Evaluator
 from optim.evolve import evolve
 from optim.faults import SpecError
@@ -66,12 +67,15 @@ class Options:
         The model with the last word in a search, if left out.
     quiet : bool
         No progress and no messages.
+    cluster : str, optional
+        Address of a Dask scheduler whose workers do the work instead of processes here.
     """
 
     out: Path | None = None
     jobs: int | None = None
     model: str | None = None
     quiet: bool = False
+    cluster: str | None = None
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)
@@ -129,6 +133,8 @@ def trade(spec: Path, options: Options) -> Trade:
     ------
     SpecError
         For a requirements file that cannot be used, or a model that cannot judge it.
+    ClusterError
+        For a cluster that cannot be used, or that stopped working.
     """
     asked = read_requirements(spec)
     space = DesignSpace.from_requirements(asked)
@@ -141,7 +147,8 @@ def trade(spec: Path, options: Options) -> Trade:
     rng = np.random.default_rng(run.seed)
     frequencies = _few(requirements, MOST_FREQUENCIES)
     with (
-        Evaluator(requirements, model, options.jobs or cpu_count()) as evaluator,
+        connected(options.cluster) as cluster,
+        Evaluator(requirements, model, options.jobs or cpu_count(), cluster=cluster) as evaluator,
         Progress(quiet=options.quiet) as progress,
     ):
         judge = Judge(requirements)

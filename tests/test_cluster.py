@@ -21,6 +21,7 @@ from optim import cluster
 from optim.cli import main
 from optim.cluster import ClusterError, connected, here
 from optim.run import JOURNAL, Options, run
+from optim.study import StudyOptions, study
 from tests.search_specs import EASY, write
 
 pytest.importorskip("distributed")
@@ -120,8 +121,20 @@ def test_a_cluster_is_one_worker(alone: Path, processes: Processes) -> None:
     assert_same(out, alone / "run")
 
 
+def test_a_study_on_a_cluster_is_the_same_study(tmp_path: Path, processes: Processes) -> None:
+    write(tmp_path)
+    path = tmp_path / "study.toml"
+    path.write_text('spec = "spec.toml"\nrepeats = 2', encoding="utf-8")
+    study(path, StudyOptions(out=tmp_path / "far", cluster=processes.address, quiet=True))
+    study(path, StudyOptions(out=tmp_path / "here", jobs=1, quiet=True))
+    one, other = (tmp_path / name / "study.csv" for name in ("far", "here"))
+    assert one.read_bytes() == other.read_bytes()
+    assert one.read_text().count(",met,") == 2
+
+
 def test_traffic_stays_on_loopback(processes: Processes) -> None:
     with connected(processes.address) as found:
+        assert found is not None
         info = found.client.scheduler_info(n_workers=-1)
         places = [info["address"], *info["workers"]]
         assert found.workers == 2
@@ -228,7 +241,7 @@ def test_workers_that_will_not_do(workers: dict[str, tuple[int, object]], words:
 
 
 def test_alike_workers_will_do() -> None:
-    cluster._check("tcp://x", Fake({"a": (1, dict(here())), "b": (1, dict(here()))}))
+    assert cluster._complaint("a", dict(here()), 1, here()) == ""
 
 
 def test_the_hash_is_of_the_source(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import tomllib
 from pathlib import Path
 
 import numpy as np
@@ -9,13 +10,16 @@ import pytest
 from scipy.stats import qmc
 
 from models import evaluate
+from optim.faults import Source
 from optim.margins import Judge
 from optim.precheck import findings
-from optim.requirements import read_requirements
+from optim.requirements import read_requirements, understood
 from optim.space import DesignSpace
+from optim.study_file import read_study
 
 STUDIES = Path(__file__).parents[1] / "studies"
-FILES = sorted(STUDIES.glob("*.toml"))
+STUDY_FILES = sorted(STUDIES.glob("study_*.toml"))
+FILES = sorted(set(STUDIES.glob("*.toml")) - set(STUDY_FILES))
 
 
 def test_there_are_studies() -> None:
@@ -27,6 +31,19 @@ def test_study_is_sound_and_listed(file: Path) -> None:
     requirements = read_requirements(file)
     space = DesignSpace.from_requirements(requirements)
     assert not [finding for finding in findings(requirements, space) if finding.ruled_out]
+    assert f"[{file.name}]({file.name})" in (STUDIES / "README.md").read_text(encoding="utf-8")
+
+
+@pytest.mark.parametrize("file", STUDY_FILES, ids=lambda file: file.stem)
+def test_study_of_many_runs_is_sound_and_listed(file: Path) -> None:
+    study = read_study(file)
+    for run in study.runs:
+        text = study.text(run)
+        source = Source(file.name, text, "", tomllib.loads(text))
+        requirements = understood(source, file)
+        space = DesignSpace.from_requirements(requirements)
+        assert not [finding for finding in findings(requirements, space) if finding.ruled_out]
+    assert 3 <= len(study.runs) <= 24
     assert f"[{file.name}]({file.name})" in (STUDIES / "README.md").read_text(encoding="utf-8")
 
 
