@@ -19,6 +19,8 @@ TESTED_ELSEWHERE = {
     "optim/drafting.py": "the pen of the drawings that test_drawing.py checks",
     "optim/faults.py": "what test_requirements.py and test_designfile.py refuse",
     "optim/overview.py": "the text that test_cli.py reads",
+    "optim/report_page.py": "the words that test_report.py reads on the page",
+    "optim/report_quantities.py": "the numbers that test_report.py compares with summary.json",
     "optim/schema.py": "what test_requirements.py and test_designfile.py read",
     "optim/study_status.py": "the words that test_study.py reads while a study runs",
     "optim/study_table.py": "the tables that test_study.py reads",

@@ -1,0 +1,57 @@
+"""All that stands beside a run's data, made and made again from its folder."""
+
+from pathlib import Path
+
+import pytest
+
+from optim.cli import main
+from optim.finish import finish
+from tests.report_runs import finished
+
+TITLE = "$x^2$ <b>&</b>"
+
+
+@pytest.fixture(scope="module")
+def folder(tmp_path_factory: pytest.TempPathFactory) -> Path:
+    folder = finished(tmp_path_factory.mktemp("met"), title=TITLE)
+    finish(folder)
+    return folder
+
+
+def contents(folder: Path) -> dict[str, bytes]:
+    return {
+        path.relative_to(folder).as_posix(): path.read_bytes()
+        for path in folder.rglob("*")
+        if path.suffix not in {".dxf", ".jsonl"} and path.is_file()
+    }
+
+
+def test_report_links_to_papers_and_pictures(folder: Path) -> None:
+    html = (folder / "report.html").read_text(encoding="utf-8")
+    for name in ("papers/smallest/sheet.pdf", "pictures/front.svg"):
+        assert (folder / name).is_file()
+        assert f'href="{name}"' in html
+
+
+def test_the_command_makes_the_same_again(folder: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    before = contents(folder)
+    (folder / "patterns.json").unlink()
+    (folder / "report.html").unlink()
+    assert main(["report", str(folder)]) == 0
+    assert capsys.readouterr().out.strip() == str(folder / "report.html")
+    assert contents(folder) == before
+
+
+def test_trade_results_in_the_folder_are_shown(folder: Path) -> None:
+    (folder / "trade").mkdir()
+    (folder / "trade" / "trade.txt").write_text("one more decibel <costs> area")
+    html = finish(folder).read_text(encoding="utf-8")
+    assert "one more decibel &lt;costs&gt; area" in html
+    assert 'href="trade/trade.txt"' in html
+
+
+def test_a_folder_without_a_run_is_bad_input(
+    tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    assert main(["report", str(tmp_path)]) == 2
+    assert "allowed: the folder of a finished search" in capsys.readouterr().err

@@ -1,0 +1,82 @@
+"""Patterns and curves of a report are what the models say, to the last digit kept."""
+
+import json
+from dataclasses import replace
+from pathlib import Path
+
+import numpy as np
+import pytest
+
+from models import evaluate, radiate
+from models.conventions import decibels
+from optim.faults import SpecError
+from optim.outcome import read_outcome
+from optim.report_data import FILE, compute, read_data, shown_points
+from optim.requirements import Band
+from optim.result import Result
+from tests.report_runs import finished
+
+
+@pytest.fixture(scope="module")
+def result(tmp_path_factory: pytest.TempPathFactory) -> Result:
+    return read_outcome(finished(tmp_path_factory.mktemp("met")))[0]
+
+
+def test_cuts_are_the_models(result: Result) -> None:
+    content = compute(result)
+    reflectors = result.space.reflectors(result.found.front.designs)
+    middle = result.requirements.band.middle_hz
+    assert content["centre_mhz"] == pytest.approx(middle / 1e6)
+    pattern = radiate(reflectors, middle, model="image")
+    level = decibels(np.abs(pattern.h_field[:, 0]) ** 2 / np.abs(pattern.h_field[:, 0, :1]) ** 2)
+    kept = np.array(content["h_tenths_db"], dtype=np.float64) / 10.0
+    seen = np.isfinite(kept) & (level > -60.0)
+    assert seen.sum() > 50
+    assert kept[seen] == pytest.approx(level[seen], abs=0.051)
+
+
+def test_curves_are_the_models(result: Result) -> None:
+    content = compute(result)
+    frequencies = 1e6 * np.array(content["mhz"])
+    reflectors = result.space.reflectors(result.found.front.designs)
+    figures = evaluate(reflectors, frequencies, model="image")
+    assert np.array(content["band"]["directivity_dbi"]) == pytest.approx(
+        figures.directivity_dbi, abs=0.0051
+    )
+
+
+def test_scout_is_asked_where_another_model_proved(result: Result) -> None:
+    assert compute(result)["scout"] == {}
+    asked = result.requirements
+    proven = replace(
+        result,
+        requirements=replace(asked, run=replace(asked.run, scout="ray", prove="image")),
+    )
+    content = compute(proven)
+    assert len(content["scout"]["gain_dbi"]) == len(result.found.front)
+
+
+@pytest.mark.parametrize(
+    ("band", "megahertz"),
+    [
+        (Band(4e8, 4e8, 1), [400.0]),
+        (Band(4e8, 5e8, 2), [400.0, 450.0, 500.0]),
+        (Band(4e8, 5e8, 21), [400.0, 425.0, 450.0, 475.0, 500.0]),
+    ],
+)
+def test_points_reach_from_edge_to_edge(band: Band, megahertz: list[float]) -> None:
+    assert (shown_points(band) / 1e6).tolist() == pytest.approx(megahertz)
+
+
+@pytest.mark.parametrize("text", ["", "[1]", "{"])
+def test_damaged_files_are_told(tmp_path: Path, text: str) -> None:
+    with pytest.raises(SpecError, match="no file"):
+        read_data(tmp_path)
+    (tmp_path / FILE).write_text(text)
+    with pytest.raises(SpecError, match="damaged"):
+        read_data(tmp_path)
+
+
+def test_file_holds_no_number_that_json_has_not(result: Result) -> None:
+    text = json.dumps(compute(result), allow_nan=False)
+    assert "NaN" not in text
