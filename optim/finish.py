@@ -21,7 +21,8 @@ from optim.report_data import compute, write_data
 
 __all__ = ["finish"]
 
-PARTS: Final = ("patterns", "papers", "pictures")
+PARTS: Final = ("papers", "pictures", "patterns")
+"""What is written side by side, the longest first."""
 
 
 def finish(folder: Path, jobs: int = 1) -> Path:
@@ -52,4 +53,5 @@ def _write(folder: Path, part: str) -> None:
     elif part == "papers":
         write_run(folder, result)
     else:
-        draw_run(folder / PICTURES, result)
+        # Data sheets and report show the cuts; only where nothing is built there is no sheet.
+        draw_run(folder / PICTURES, result, cuts=not result.met)

@@ -62,8 +62,15 @@ _QUANTITIES: Final = {
 }
 
 
-def draw_run(folder: Path, result: Result) -> list[Path]:
+def draw_run(folder: Path, result: Result, *, cuts: bool = True) -> list[Path]:
     """Draw every picture of `result` into `folder`; return the files, in a reader's order.
+
+    Parameters
+    ----------
+    folder : Path
+    result : Result
+    cuts : bool
+        Also the cuts of every design put before the reader.
 
     Raises
     ------
@@ -89,7 +96,7 @@ def draw_run(folder: Path, result: Result) -> list[Path]:
             names=names,
             bounds=requirements.limits,
         )
-        for row, name in enumerate(names):
+        for row, name in enumerate(names if cuts else ()):
             words = name.replace("_", " ")
             pictures[f"{name}_cuts"] = draw_cuts(
                 title=f"{words}: {requirements.title}",

@@ -6,15 +6,16 @@ import pytest
 
 from optim.cli import main
 from optim.finish import finish
-from tests.report_runs import finished
+from tests.search_specs import EASY, write
 
 TITLE = "$x^2$ <b>&</b>"
 
 
 @pytest.fixture(scope="module")
 def folder(tmp_path_factory: pytest.TempPathFactory) -> Path:
-    folder = finished(tmp_path_factory.mktemp("met"), title=TITLE)
-    finish(folder)
+    spec = write(tmp_path_factory.mktemp("met"), EASY.replace('"Easy"', f'"{TITLE}"'))
+    folder = spec.parent / "run"
+    assert main(["search", str(spec), "--out", str(folder), "--jobs", "1", "--quiet"]) == 0
     return folder
 
 
