@@ -107,7 +107,9 @@ def figures_of_merit(pattern: Pattern, terms: Terms | None = None) -> Figures:
     h_power, e_power = _intensity(pattern.h_field), _intensity(pattern.e_field)
     front = h_power[..., :1]
     with np.errstate(divide="ignore", invalid="ignore"):
-        h_level, e_level = decibels(h_power / front), decibels(e_power / front)
+        # Each cut by its own value on boresight: the two agree but for rounding, which an envelope
+        # of 0 dB there would not forgive.
+        h_level, e_level = decibels(h_power / front), decibels(e_power / e_power[..., :1])
         directivity = decibels(front[..., 0] / pattern.power)
     rear = angles >= np.pi - terms.rear_sector - 1e-9
     rear_level = np.maximum(h_level[..., rear].max(axis=-1), e_level[..., rear].max(axis=-1))

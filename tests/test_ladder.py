@@ -8,7 +8,7 @@ from pathlib import Path
 import numpy as np
 import pytest
 
-from models import MODELS, Figures, Reflectors, evaluate, radiate
+from models import MODELS, Figures, Reflectors, Terms, evaluate, radiate
 from models.conventions import C0
 
 NAMES = tuple(MODELS)
@@ -87,3 +87,13 @@ def test_bad_calls_are_refused() -> None:
     for bad in (0.0, -1e9, np.nan, np.inf, [[1e9]]):
         with pytest.raises(ValueError, match="frequencies_hz"):
             evaluate(designs(), bad, model="image")
+
+
+@pytest.mark.parametrize("model", ["ray", "moment"])
+def test_envelope_of_0_db_on_boresight_is_kept(model: str) -> None:
+    # Levels are relative to boresight, whatever the last bits of the two cuts say.
+    flat = (0.0, 0.0), (np.radians(10.0), 0.0)
+    figures = evaluate(designs(), FREQUENCIES, model=model, terms=Terms(mask_h=flat, mask_e=flat))
+    assert (figures.boresight_dip_db == 0.0).all()
+    assert (figures.mask_h_db < 0.0).all()
+    assert (figures.mask_e_db < 0.0).all()
