@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Iterator
 from dataclasses import dataclass
 from pathlib import Path
-from typing import Any
+from typing import Any, Final
 
 import numpy as np
 
@@ -30,6 +30,9 @@ from optim.tolerance import Spread
 from optim.tolerance_table import spread_object, spread_rows, spread_words
 
 __all__ = ["Result", "aligned"]
+
+MOST_TITLE: Final = 180
+"""Letters of the title in a design file, which takes 200 with the role behind."""
 
 
 @dataclass(frozen=True)
@@ -160,7 +163,7 @@ class Result:
     def _design(self, judged: Judged, row: int, name: str) -> Design:
         asked = self.requirements
         return Design(
-            title=f"{asked.title}: {name.replace('_', ' ')}",
+            title=f"{asked.title[:MOST_TITLE]}: {name.replace('_', ' ')}",
             reflectors=self._reflectors(judged)[[row]],
             band=asked.band,
             build=asked.build,

@@ -1,12 +1,14 @@
 """The outcome in words, from a result made by hand."""
 
 import json
+from dataclasses import replace
 from pathlib import Path
 
 import numpy as np
 
 from models import Figures
 from optim.archive import Judged
+from optim.designfile import read_design
 from optim.result import Result
 from optim.search import Found
 from optim.space import DesignSpace
@@ -70,3 +72,10 @@ def test_binding_is_what_the_recommended_barely_meet(tmp_path: Path) -> None:
         "balanced.toml",
         "smallest.toml",
     ]
+
+
+def test_design_files_of_the_longest_title_are_read(tmp_path: Path) -> None:
+    one = result(tmp_path, front=row(0.3, 0.5, 11.05, 50.0))
+    named = replace(one, requirements=replace(one.requirements, title="x" * 200))
+    named.write(tmp_path, {})
+    assert read_design(tmp_path / "recommended" / "smallest.toml").title.endswith("x: smallest")
