@@ -88,12 +88,13 @@ def read_outcome(folder: Path) -> tuple[Result, dict[str, str]]:
     try:
         run = RunSettings(**content["run"])
         known = content["format"] == FORMAT and content["model"] in MODELS
+        versions = dict(content["versions"])
         result = _result(content, replace(requirements, run=run)) if known else None
     except (AttributeError, KeyError, TypeError, ValueError) as error:
         raise _damaged(path) from error
     if result is None:
         raise _damaged(path)
-    return result, content["versions"]
+    return result, versions
 
 
 def _result(content: dict[str, Any], requirements: Requirements) -> Result:

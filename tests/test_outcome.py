@@ -1,5 +1,6 @@
 """A run read back from its folder is the run that was written, bit for bit."""
 
+import json
 from dataclasses import fields, replace
 from pathlib import Path
 
@@ -51,3 +52,13 @@ def test_damaged_files_are_told(tmp_path: Path, text: str) -> None:
     (tmp_path / FILE).write_text(text)
     with pytest.raises(SpecError, match=r"found\.json: a damaged file"):
         read_outcome(tmp_path)
+
+
+def test_a_file_without_its_versions_is_damaged(tmp_path: Path) -> None:
+    folder = tmp_path / "run"
+    run(write(tmp_path), Options(out=folder, jobs=1, quiet=True, seed=3))
+    content = json.loads((folder / FILE).read_text(encoding="utf-8"))
+    del content["versions"]
+    (folder / FILE).write_text(json.dumps(content), encoding="utf-8")
+    with pytest.raises(SpecError, match="a damaged file"):
+        read_outcome(folder)
