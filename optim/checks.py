@@ -119,7 +119,7 @@ def _require(spec: SpecFile) -> Iterator[Complaint]:
     if not spec.require.model_fields_set:
         keys = ", ".join(type(spec.require).model_fields)
         yield "require", "nothing", f"at least one requirement: {keys}"
-    for key in spec.require.model_fields_set:
+    for key in type(spec.require).model_fields:
         table = getattr(spec.require, key)
         if not isinstance(table, Table):
             continue
@@ -140,7 +140,7 @@ def _require(spec: SpecFile) -> Iterator[Complaint]:
 
 
 def _size(spec: SpecFile) -> Iterator[Complaint]:
-    for key in spec.size.model_fields_set:
+    for key in type(spec.size).model_fields:
         cap = getattr(spec.size, key)
         if cap is not None:
             yield from _missing(f"size.{key}", cap, tuple(type(cap).model_fields))

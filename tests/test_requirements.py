@@ -380,6 +380,17 @@ def test_every_fault_is_named_at_once(tmp_path: Path) -> None:
     }
 
 
+def test_faults_come_in_the_order_of_the_template(tmp_path: Path) -> None:
+    keys = ["gain_dbi", "beamwidth_h_deg", "front_to_back_db", "sidelobe_db", "vswr"]
+    lines = [f"{key} = {{}}" for key in reversed(keys)]
+    caps = ["width_mm", "height_mm", "depth_mm", "mass_kg"]
+    text = "\n".join(["[require]", *lines, "[size]", *(f"{cap} = {{}}" for cap in reversed(caps))])
+    with pytest.raises(SpecError) as caught:
+        read(tmp_path, f"[band]\nlow_mhz = 900\nhigh_mhz = 920\n{text}")
+    named = [fault.key.split(".")[1] for fault in caught.value.faults]
+    assert named == [*keys, *caps]
+
+
 def test_faults_past_a_hundred_are_counted(tmp_path: Path) -> None:
     noise = "".join(f"key{i} = {i}\n" for i in range(2000))
     with pytest.raises(SpecError, match="1900 more faults") as caught:
