@@ -21,9 +21,9 @@ from models import MODELS
 from optim.cluster import connected
 from optim.evaluate import Evaluator
 from optim.faults import Fault, SpecError
-from optim.journal import Header, Journal, read_header
+from optim.journal import Header, Journal, JournalError, read_header
 from optim.margins import Judge
-from optim.outcome import write_outcome
+from optim.outcome import FILE, write_outcome
 from optim.precheck import blind_spots
 from optim.progress import Progress
 from optim.referee import columns
@@ -89,7 +89,8 @@ def run(spec: Path, options: Options, progress: Progress | None = None) -> Resul
     SpecError
         For a requirements file that cannot be used, and models that cannot judge it.
     JournalError
-        For a folder that holds another run, or a journal that cannot be written.
+        For a folder that holds another run or what is left of one, or a journal that cannot be
+        written.
     ClusterError
         For a cluster that cannot be used, or that stopped working.
     OSError
@@ -107,6 +108,9 @@ def run(spec: Path, options: Options, progress: Progress | None = None) -> Resul
     if faults:
         raise SpecError(faults)
     header = header_of(requirements, space)
+    if (folder / FILE).exists() and not (folder / JOURNAL).exists():
+        msg = f"{folder}: holds the results of a run without its journal; choose another with --out"
+        raise JournalError(msg)
     folder.mkdir(parents=True, exist_ok=True)
     settings = requirements.run
     jobs = options.jobs or cpu_count()

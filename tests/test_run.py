@@ -104,6 +104,18 @@ def test_a_folder_with_a_run_is_left_alone(
     assert (folder / "journal.jsonl").read_bytes() == before
 
 
+def test_results_without_their_journal_are_not_mixed_with_others(
+    tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    # Designs, papers and patterns of the first search would stand beside those of the second.
+    (tmp_path / "run").mkdir()
+    (tmp_path / "run" / "found.json").write_text("{}")
+    for options in ((), ("--resume",)):
+        assert command(write(tmp_path), *options) == 2
+        assert "results of a run without its journal" in capsys.readouterr().err
+    assert [path.name for path in (tmp_path / "run").iterdir()] == ["found.json"]
+
+
 def test_resuming_a_finished_run_writes_its_results_again(folder: Path) -> None:
     front = (folder / "front.csv").read_bytes()
     (folder / "front.csv").unlink()
