@@ -67,7 +67,7 @@ def let_loose(
     return told, finer
 
 
-def hold(told: Figures, finer: Figures) -> None:
+def assert_holds(told: Figures, finer: Figures) -> None:
     """Assert that what the search was told stands on the finer grids."""
     assert len(told.gain_dbi) > 10
     assert (told.doubt_db <= moment.VOUCHED_DB).all()
@@ -80,4 +80,4 @@ def hold(told: Figures, finer: Figures) -> None:
 
 
 def test_no_holes(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
-    hold(*let_loose(tmp_path, monkeypatch, population=40, generations=10, longest=1300))
+    assert_holds(*let_loose(tmp_path, monkeypatch, population=40, generations=10, longest=1300))

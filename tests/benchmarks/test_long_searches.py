@@ -11,7 +11,7 @@ from pathlib import Path
 import pytest
 
 from optim.run import Options, run
-from tests.test_holes import hold, let_loose
+from tests.test_holes import assert_holds, let_loose
 
 SPECS = {
     # Specs of no shipped study: a narrow and a medium band, with and without match.
@@ -62,4 +62,4 @@ def test_smallest_is_near_the_best_of_long_searches(tmp_path: Path, name: str) -
 
 
 def test_no_holes_after_a_long_search(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
-    hold(*let_loose(tmp_path, monkeypatch, population=120, generations=80, longest=2000))
+    assert_holds(*let_loose(tmp_path, monkeypatch, population=120, generations=80, longest=2000))
