@@ -16,8 +16,7 @@ from optim.papers import write_run
 from optim.plots import FOLDER as PICTURES
 from optim.plots import draw_run
 from optim.report import make_report
-from optim.report_data import FILE as PATTERNS
-from optim.report_data import compute, write_data
+from optim.report_data import compute, is_current, write_data
 
 __all__ = ["finish"]
 
@@ -28,7 +27,7 @@ PARTS: Final = ("papers", "pictures", "patterns")
 def finish(folder: Path, jobs: int = 1) -> Path:
     """Write all of it for the finished search in `folder`; return the report.
 
-    Patterns are computed only where they are not there yet.
+    Patterns are computed only where those of the designs are not there yet.
 
     Raises
     ------
@@ -38,7 +37,7 @@ def finish(folder: Path, jobs: int = 1) -> Path:
         Where a file cannot be read or written.
     """
     read_outcome(folder)
-    parts = [part for part in PARTS if part != "patterns" or not (folder / PATTERNS).exists()]
+    parts = [part for part in PARTS if part != "patterns" or not is_current(folder)]
     with parallel_config("loky", inner_max_num_threads=1):
         Parallel(n_jobs=min(jobs, len(PARTS)), batch_size=1)(
             delayed(_write)(folder, part) for part in parts

@@ -7,6 +7,7 @@ few frequencies, by the deciding model; figures worst over the band by the scout
 
 from __future__ import annotations
 
+import hashlib
 import json
 from pathlib import Path
 from typing import Any, Final
@@ -21,10 +22,19 @@ from models.figures import figures_of_merit
 from models.pattern import Pattern
 from optim.faults import Fault, SpecError
 from optim.margins import Judge
+from optim.outcome import FILE as FOUND
 from optim.requirements import Band
 from optim.result import Result
 
-__all__ = ["BAND_FIGURES", "FILE", "compute", "read_data", "shown_points", "write_data"]
+__all__ = [
+    "BAND_FIGURES",
+    "FILE",
+    "compute",
+    "is_current",
+    "read_data",
+    "shown_points",
+    "write_data",
+]
 
 FILE: Final = "patterns.json"
 CHUNK: Final = 25
@@ -100,7 +110,8 @@ def shown_points(band: Band) -> FloatArray:
 
 
 def write_data(folder: Path, content: dict[str, Any]) -> None:
-    """Write the numbers into `folder`."""
+    """Write the numbers into `folder`, with the mark of the designs that they belong to."""
+    content = {"found_sha256": _mark(folder), **content}
     text = json.dumps(content, separators=(",", ":"), allow_nan=False)
     (folder / FILE).write_text(text + "\n", encoding="utf-8")
 
@@ -111,19 +122,34 @@ def read_data(folder: Path) -> dict[str, Any]:
     Raises
     ------
     SpecError
-        For a file that is missing or damaged.
+        For a file that is missing or damaged, or belongs to other designs.
     """
     path = folder / FILE
+    given, content = "a damaged file", None
     try:
         content = json.loads(path.read_text(encoding="utf-8"))
+        if content["found_sha256"] != _mark(folder):
+            given, content = "a file of other designs", None
     except FileNotFoundError:
-        raise SpecError([Fault(str(path), "", "no file", "what apexfront search wrote")]) from None
-    except ValueError:
-        fault = Fault(str(path), "", "a damaged file", "what apexfront search wrote")
-        raise SpecError([fault]) from None
+        given = "no file"
+    except (KeyError, TypeError, ValueError):
+        content = None
     if not isinstance(content, dict):
-        raise SpecError([Fault(str(path), "", "a damaged file", "what apexfront search wrote")])
+        raise SpecError([Fault(str(path), "", given, "what apexfront report writes")])
     return content
+
+
+def is_current(folder: Path) -> bool:
+    """Return whether `folder` holds numbers of the designs in it."""
+    try:
+        read_data(folder)
+    except SpecError:
+        return False
+    return True
+
+
+def _mark(folder: Path) -> str:
+    return hashlib.sha256((folder / FOUND).read_bytes()).hexdigest()
 
 
 def _radiated(designs: FloatArray, frequencies: FloatArray, model: str, build: Build) -> Pattern:

@@ -109,12 +109,12 @@ def page(
         ("cautions", "Cautions"),
         ("files", "Files"),
     ]
-    verdict = next(iter(result.verdict()))
+    verdict = next(iter(result.verdict())).partition(": ")[2]
     return {
         "title": requirements.title,
         "band": f"{low:g} MHz" if low == high else f"{low:g} to {high:g} MHz",
         "met": result.met,
-        "verdict": verdict.partition(": ")[2],
+        "verdict": verdict[:1].upper() + verdict[1:],
         "binding": _binding(result) if rows else [],
         "contents": parts,
         "roles": list(rows),

@@ -5,7 +5,7 @@ from pathlib import Path
 import pytest
 
 from optim.cli import main
-from optim.finish import finish
+from optim.report import make_report
 from tests.search_specs import EASY, write
 
 TITLE = "$x^2$ <b>&</b>"
@@ -46,7 +46,7 @@ def test_the_command_makes_the_same_again(folder: Path, capsys: pytest.CaptureFi
 def test_trade_results_in_the_folder_are_shown(folder: Path) -> None:
     (folder / "trade").mkdir()
     (folder / "trade" / "trade.txt").write_text("one more decibel <costs> area")
-    html = finish(folder).read_text(encoding="utf-8")
+    html = make_report(folder).read_text(encoding="utf-8")
     assert "one more decibel &lt;costs&gt; area" in html
     assert 'href="trade/trade.txt"' in html
 

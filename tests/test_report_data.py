@@ -10,8 +10,9 @@ import pytest
 from models import evaluate, radiate
 from models.conventions import decibels
 from optim.faults import SpecError
+from optim.outcome import FILE as FOUND
 from optim.outcome import read_outcome
-from optim.report_data import FILE, compute, read_data, shown_points
+from optim.report_data import FILE, compute, is_current, read_data, shown_points, write_data
 from optim.requirements import Band
 from optim.result import Result
 from tests.report_runs import finished
@@ -68,12 +69,23 @@ def test_points_reach_from_edge_to_edge(band: Band, megahertz: list[float]) -> N
     assert (shown_points(band) / 1e6).tolist() == pytest.approx(megahertz)
 
 
-@pytest.mark.parametrize("text", ["", "[1]", "{"])
+@pytest.mark.parametrize("text", ["", "[1]", "{", "{}"])
 def test_damaged_files_are_told(tmp_path: Path, text: str) -> None:
+    (tmp_path / FOUND).write_text("{}")
     with pytest.raises(SpecError, match="no file"):
         read_data(tmp_path)
     (tmp_path / FILE).write_text(text)
     with pytest.raises(SpecError, match="damaged"):
+        read_data(tmp_path)
+
+
+def test_numbers_of_other_designs_are_refused(tmp_path: Path) -> None:
+    (tmp_path / FOUND).write_text("{}")
+    write_data(tmp_path, {"mhz": [1.0]})
+    assert read_data(tmp_path)["mhz"] == [1.0]
+    (tmp_path / FOUND).write_text('{"format": 1}')
+    assert not is_current(tmp_path)
+    with pytest.raises(SpecError, match="other designs"):
         read_data(tmp_path)
 
 
