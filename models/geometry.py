@@ -128,6 +128,11 @@ class Reflectors:
         return np.maximum(rim, self.spacing + self.dipole_diameter / 2.0)
 
     @property
+    def clearance(self) -> FloatArray:
+        """From the dipole's surface to the plates, or to their planes beyond the rims, m, (n,)."""
+        return self.spacing * np.sin(self.apex_angle / 2.0) - self.dipole_diameter / 2.0
+
+    @property
     def frontal_area(self) -> FloatArray:
         """Width times height, m², (n,)."""
         return self.width * self.height

@@ -117,7 +117,10 @@ class Judge:
         scales = np.array([limit.scale for limit in self.limits])
         dip = _margin(GUARDS[0], {}, figures) / GUARDS[0].scale
         # A model without an estimate of its own error gives NaN there, which is no refusal.
-        vouched = np.where(np.isposinf(figures.doubt_db).any(axis=1), -MISSING, 0.0)
+        refused = np.isposinf(figures.doubt_db).any(axis=1)
+        # No model knows of a dipole that touches the plates.
+        refused |= reflectors.clearance <= 0.0
+        vouched = np.where(refused, -MISSING, 0.0)
         margins = self.margins(reflectors, figures) / scales
         return -np.column_stack([margins, dip, vouched]) + 0.0
 

@@ -41,6 +41,12 @@ def test_sizes_of_a_right_angle() -> None:
     assert designs.longest_side[0] == pytest.approx(0.5 * np.sqrt(2.0))
 
 
+def test_clearance_is_that_of_a_rod_between_planes() -> None:
+    # 30-60-90 triangle: the axis is half the spacing off either plate.
+    design = Reflectors(**{**GOOD, "apex_angle": np.pi / 3.0})
+    assert design.clearance[0] == pytest.approx(0.1 - 0.005)
+
+
 def test_the_dipole_counts_where_it_sticks_out() -> None:
     designs = Reflectors(**{**GOOD, "apex_angle": np.pi, "dipole_length": 0.7})
     assert designs.height[0] == pytest.approx(0.7)

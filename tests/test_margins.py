@@ -154,6 +154,17 @@ def test_split_beam_and_unvouched_design_are_refused(tmp_path: Path) -> None:
     assert j.margins(square(4), figures).shape == (4, len(j.limits))
 
 
+def test_dipole_through_the_plates_is_refused(tmp_path: Path) -> None:
+    # Plates at 30°: a rod of 6 mm touches them where its axis is 6 mm from the apex line.
+    usual = square(3).matrix()
+    usual[:, 0], usual[:, 5] = np.pi / 3.0, 6e-3
+    usual[:, 1] = 5.9e-3, 6.1e-3, 0.1
+    found = judge(tmp_path).violations(
+        Reflectors.from_matrix(usual), flat(gain_dbi=[[11.0] * 3] * 3)
+    )
+    assert found[:, -1].tolist() == [MISSING, 0.0, 0.0]
+
+
 def test_objectives_have_sign_and_are_worst_over_the_band(tmp_path: Path) -> None:
     j = judge(tmp_path)
     figures = flat(
