@@ -186,6 +186,8 @@ class Result:
         band, model = self.requirements.band, self.found.model
         points = band.refined().points
         where = f"{points} frequencies from {band.low_hz / 1e6:g} to {band.high_hz / 1e6:g} MHz"
+        if points == 1:
+            where = f"{band.low_hz / 1e6:g} MHz"
         if self.met:
             count = len(self.found.front)
             yield f"Met: {count} design{'s' * (count > 1)} on the front, by {model} at {where}."

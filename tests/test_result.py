@@ -9,6 +9,7 @@ import numpy as np
 from models import Figures
 from optim.archive import Judged
 from optim.designfile import read_design
+from optim.requirements import Band
 from optim.result import Result
 from optim.search import Found
 from optim.space import DesignSpace
@@ -47,6 +48,14 @@ def test_met_in_words(tmp_path: Path) -> None:
     assert table["spacing_mm"] == ["300", "400"]
     assert table["gain_dbi"] == ["min", "11", "11.05", "(+0.05)", "13", "(+2)"]
     assert table["beamwidth_h_deg"] == ["max", "60", "50", "(+10)", "45", "(+15)"]
+
+
+def test_one_frequency_in_words(tmp_path: Path) -> None:
+    one = result(tmp_path, front=row(0.3, 0.5, 11.05, 50.0))
+    single = replace(one.requirements, band=Band(430e6, 430e6, 1))
+    assert next(replace(one, requirements=single).verdict()) == (
+        "Met: 1 design on the front, by image at 430 MHz."
+    )
 
 
 def test_not_met_in_words(tmp_path: Path) -> None:
