@@ -102,6 +102,9 @@ def run(spec: Path, options: Options, progress: Progress | None = None) -> Resul
     requirements = read_requirements(spec)
     folder = options.out or Path(DEFAULT_FOLDER) / spec.stem
     recorded = read_header(folder / JOURNAL) if options.resume else None
+    if recorded is not None and {recorded.scout, recorded.prove} - {*MODELS, "none"}:
+        msg = f"{folder / JOURNAL}: made with models of another version. Choose another folder"
+        raise JournalError(msg)
     requirements = settled(requirements, options, recorded)
     space = DesignSpace.from_requirements(requirements)
     faults = list(unjudged(requirements, space))

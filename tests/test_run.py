@@ -104,6 +104,16 @@ def test_a_folder_with_a_run_is_left_alone(
     assert (folder / "journal.jsonl").read_bytes() == before
 
 
+def test_a_journal_with_an_unknown_model_is_refused(
+    folder: Path, tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    (tmp_path / "run").mkdir()
+    journal = (folder / "journal.jsonl").read_text().replace('"scout":"image"', '"scout":"other"')
+    (tmp_path / "run" / "journal.jsonl").write_text(journal)
+    assert command(write(tmp_path), "--resume") == 2
+    assert "models of another version" in capsys.readouterr().err
+
+
 def test_results_without_their_journal_are_not_mixed_with_others(
     tmp_path: Path, capsys: pytest.CaptureFixture[str]
 ) -> None:
