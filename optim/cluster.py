@@ -59,9 +59,8 @@ class Cluster:
 
     def lost(self, error: Exception) -> ClusterError:
         """Return in words what `error`, raised while the cluster worked, means."""
-        cause = f"{type(error).__name__}: {error}".rstrip(": ")
         return ClusterError(
-            f"cluster {self.address}: stopped working ({cause}). "
+            f"cluster {self.address}: stopped working ({_first_line(error)}). "
             "What was evaluated is safe; go on with --resume"
         )
 
@@ -84,7 +83,7 @@ def connected(address: str | None) -> Iterator[Cluster | None]:
         raise ClusterError(msg)
     import distributed  # slow to start, and perhaps not there
 
-    logging.getLogger("distributed").setLevel(logging.CRITICAL)
+    _silence()
     try:
         make: Any = distributed.Client
         client = make(address, timeout=REACH, set_as_default=False)
@@ -129,6 +128,13 @@ def refuse_another(asked: dict[str, str]) -> None:
     complaint = _complaint(worker.address, here(), worker.state.nthreads, asked)
     if complaint:
         raise ClusterError(complaint)
+
+
+def _silence() -> None:
+    """Leave it to the messages here to say what is wrong; Dask logs tracebacks."""
+    for name in logging.root.manager.loggerDict:
+        if name.partition(".")[0] in {"distributed", "tornado", "asyncio"}:
+            logging.getLogger(name).setLevel(logging.CRITICAL)
 
 
 def _check(address: str, client: Any) -> None:

@@ -1,7 +1,7 @@
 """Pictures of a whole study: smallest frontal area (m²) against what was varied, and all fronts.
 
 Every point is one run: the antenna of the smallest frontal area that meets its requirements. Where
-none does, a cross stands at the upper edge. Lines join the smallest of each level.
+none does, a cross stands at the upper edge. Lines join the smallest at levels that are numbers.
 """
 
 from __future__ import annotations
@@ -17,7 +17,7 @@ from matplotlib.figure import Figure
 
 from optim.study_file import Factor, Study, StudyRun
 from optim.study_folder import Outcome
-from optim.style import BLACK, GREY, MARKS, house_style, new_figure, no_data, plain, save
+from optim.style import BLACK, GREY, MARKS, Mark, house_style, new_figure, no_data, plain, save
 
 if TYPE_CHECKING:
     from matplotlib.axes import Axes
@@ -87,7 +87,7 @@ def draw_smallest(study: Study, outcomes: Mapping[int, Outcome], factor: Factor)
                 if (area := outcomes[run.number].area) is not None
             ]
             mark = MARKS[index % len(MARKS)]
-            _series_of(axes, found, mark.colour, mark.marker, mark.dashes, name)
+            _series_of(axes, found, mark, name, joined=factor.numeric)
         _unmet(axes, study, outcomes, factor, places)
         if not axes.lines:
             no_data(axes, "no run done")
@@ -173,12 +173,7 @@ def _places(axes: Axes, factor: Factor) -> list[float]:
 
 
 def _series_of(
-    axes: Axes,
-    found: list[tuple[float, float]],
-    colour: str,
-    marker: str,
-    dashes: str,
-    name: str,
+    axes: Axes, found: list[tuple[float, float]], mark: Mark, name: str, *, joined: bool
 ) -> None:
     if not found:
         return
@@ -187,18 +182,22 @@ def _series_of(
         points[:, 0],
         points[:, 1],
         linestyle="none",
-        marker=marker,
+        marker=mark.marker,
         markersize=6,
-        color=colour,
+        color=mark.colour,
         markeredgecolor=BLACK,
         markeredgewidth=0.5,
         label=name,
     )
+    if not joined:
+        return
     least = [
         (x, min(area for _, area in rows))
         for x, rows in itertools.groupby(points.tolist(), key=lambda row: row[0])
     ]
-    axes.plot(*np.array(least).T, color=colour, linestyle=dashes, linewidth=1.2, zorder=1.5)
+    axes.plot(
+        *np.array(least).T, color=mark.colour, linestyle=mark.dashes, linewidth=1.2, zorder=1.5
+    )
 
 
 def _unmet(

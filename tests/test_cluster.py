@@ -9,7 +9,7 @@ import subprocess
 import sys
 import threading
 import time
-from collections.abc import Iterator
+from collections.abc import Callable, Iterator
 from contextlib import ExitStack
 from dataclasses import dataclass
 from pathlib import Path
@@ -61,6 +61,7 @@ class Processes:
     """A scheduler and its two workers."""
 
     address: str
+    scheduler: subprocess.Popen[bytes]
     workers: list[subprocess.Popen[bytes]]
 
 
@@ -69,11 +70,11 @@ def processes(tmp_path_factory: pytest.TempPathFactory) -> Iterator[Processes]:
     folder = tmp_path_factory.mktemp("dask")
     file = folder / "scheduler.json"
     with ExitStack() as stack:
-        dask(stack, "scheduler", "--port", "0", "--scheduler-file", str(file))
+        scheduler = dask(stack, "scheduler", "--port", "0", "--scheduler-file", str(file))
         started = [dask(stack, "worker", "--scheduler-file", str(file), *ONCE) for _ in range(2)]
         address = _address(file)
         _wait_for(address, 2)
-        yield Processes(address, started)
+        yield Processes(address, scheduler, started)
 
 
 def _address(file: Path) -> str:
@@ -125,11 +126,13 @@ def test_a_study_on_a_cluster_is_the_same_study(tmp_path: Path, processes: Proce
     write(tmp_path)
     path = tmp_path / "study.toml"
     path.write_text('spec = "spec.toml"\nrepeats = 2', encoding="utf-8")
-    study(path, StudyOptions(out=tmp_path / "far", cluster=processes.address, quiet=True))
-    study(path, StudyOptions(out=tmp_path / "here", jobs=1, quiet=True))
-    one, other = (tmp_path / name / "study.csv" for name in ("far", "here"))
-    assert one.read_bytes() == other.read_bytes()
-    assert one.read_text().count(",met,") == 2
+    far = tmp_path / "far"
+    options = StudyOptions(out=far, jobs=1, cluster=processes.address, quiet=True)
+    assert [outcome.status for outcome in study(path, options).outcomes.values()] == ["met", "met"]
+    for number in ("0001", "0002"):
+        spec = far / "runs" / number / "spec.toml"
+        run(spec, Options(out=tmp_path / number, jobs=1, quiet=True))
+        assert_same(spec.parent, tmp_path / number)
 
 
 def test_traffic_stays_on_loopback(processes: Processes) -> None:
@@ -170,23 +173,45 @@ def test_a_chunk_for_another_program_is_refused(
         run(alone / "spec.toml", options)
 
 
-def test_a_lost_worker_costs_no_results(alone: Path, processes: Processes) -> None:
-    out = alone / "lost"
+def when_under_way(out: Path, then: Callable[[], None]) -> threading.Thread:
+    """Do something as soon as a search has recorded its first designs."""
 
-    def kill() -> None:
+    def wait() -> None:
         end = time.monotonic() + 60.0
         while time.monotonic() < end:
             if (out / JOURNAL).exists() and (out / JOURNAL).read_bytes().count(b"\n") >= 2:
                 break
             time.sleep(0.002)
-        processes.workers[0].kill()
+        then()
 
-    killer = threading.Thread(target=kill)
-    killer.start()
+    thread = threading.Thread(target=wait)
+    thread.start()
+    return thread
+
+
+def test_a_lost_worker_costs_no_results(alone: Path, processes: Processes) -> None:
+    out = alone / "lost"
+    killer = when_under_way(out, processes.workers[0].kill)
     run(alone / "spec.toml", Options(out=out, cluster=processes.address, quiet=True))
     killer.join()
     assert processes.workers[0].wait(timeout=30) != 0
     assert_same(out, alone / "run")
+
+
+def test_a_lost_scheduler_stops_the_run_in_words(
+    alone: Path, processes: Processes, capfd: pytest.CaptureFixture[str]
+) -> None:
+    """Last of those with a cluster: it is gone afterwards."""
+    out, spec = alone / "gone", str(alone / "spec.toml")
+    killer = when_under_way(out, processes.scheduler.kill)
+    assert main(["search", spec, "--out", str(out), "--cluster", processes.address]) == 2
+    killer.join()
+    (told,) = capfd.readouterr().err.splitlines()
+    assert told.startswith(f"cluster {processes.address}: stopped working (")
+    assert told.endswith("What was evaluated is safe; go on with --resume")
+    recorded = (out / JOURNAL).read_bytes()
+    assert (alone / "run" / JOURNAL).read_bytes().startswith(recorded)
+    assert recorded.count(b"\n") >= 2
 
 
 def test_an_address_without_a_scheduler(

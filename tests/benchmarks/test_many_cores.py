@@ -94,7 +94,8 @@ def test_24_runs_take_their_time_and_no_memory(tmp_path: Path) -> None:
     print(  # noqa: T201
         f"\n24 runs in {ends[-1]:.1f} s; runs 3 to 12 in {first:.1f} s, "
         f"15 to 24 in {second:.1f} s; correlation with a straight line {straight:.4f}; "
-        f"both processes together {np.mean(memory[2:8]):.0f} MB early, {np.mean(memory[-6:]):.0f} MB at the end "
+        f"both processes together {np.mean(memory[2:8]):.0f} MB early, "
+        f"{np.mean(memory[-6:]):.0f} MB at the end "
         f"(load {os.getloadavg()[0]:.1f})"
     )
     assert straight >= 0.99
