@@ -49,6 +49,8 @@ _DASHES: Final[dict[str, Any]] = {"-": [1, 0], "--": [6, 3], "-.": [6, 3, 1.5, 3
 _SHAPES: Final = ["square", "diamond", "triangle-up", "triangle-down", "cross", "circle"]
 _LEVELS: Final[dict[str, Any]] = {"domain": [FLOOR_DB, 3.0], "clamp": True, "nice": False}
 _LIMIT: Final = "#a34a1f"
+_EDGES: Final[tuple[dict[str, Any], ...]] = ({"stroke": "white", "strokeWidth": 4}, {})
+"""Edges of words that stand among points: first the white, then the word on it."""
 
 
 def _finished(chart: Any, data: Mapping[str, Rows] | None = None, **size: Any) -> Spec:
@@ -146,12 +148,14 @@ def front_chart(across: str, upwards: str, colour: str) -> Spec:
             "order:N", scale=alt.Scale(domain=list(range(6)), range=_SHAPES), legend=None
         ),
     )
-    # Neighbours on the front often both have a role: their names stand at different heights.
+    # Neighbours on the front often both have a role: their names stand at different heights,
+    # each on a white edge that keeps it apart from the points.
     names = [
         roles.transform_filter(f"datum.order % 3 == {order}")
-        .mark_text(dy=dy, fontSize=12, fontWeight="bold")
+        .mark_text(dy=dy, fontSize=12, fontWeight="bold", **edge)
         .encode(x=x, y=y, text=alt.Text("role:N"))
         for order, dy in enumerate((-16, 22, -32))
+        for edge in _EDGES
     ]
     ring = (
         designs.transform_filter("datum.id == picked")
