@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Callable
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import Final
 
 import numpy as np
@@ -101,8 +101,14 @@ def evaluate(
     """Return the figures of merit of every design at every frequency, each (n, n_freq).
 
     Parameters and errors are those of `radiate`, and `terms`: what the figures are asked against.
+    A model that does not solve the dipole gives the impedance of a sinusoidal current, but no VSWR
+    and no realized gain.
     """
-    return figures_of_merit(radiate(reflectors, frequencies_hz, model=model, build=build), terms)
+    figures = figures_of_merit(radiate(reflectors, frequencies_hz, model=model, build=build), terms)
+    if MODELS[model].gives_match:
+        return figures
+    missing = np.full(figures.vswr.shape, np.nan)
+    return replace(figures, vswr=missing, realized_gain_dbi=missing)
 
 
 def sphere(

@@ -64,7 +64,8 @@ def evolve(
             asked = algorithm.ask()
             if asked is None:
                 return
-            objectives, violation = view(referee.judge(asked.get("X")))
+            judged = referee.judge(asked.get("X"), lambda some: view(some)[1] <= 0.0)
+            objectives, violation = view(judged)
             asked.set("F", objectives, "G", violation[:, None])
             algorithm.tell(infills=asked)
             told(referee)

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable
+
 import numpy as np
 
 from models import Figures
@@ -13,6 +15,8 @@ from optim.margins import Judge
 from optim.space import DesignSpace
 
 __all__ = ["Referee", "columns", "worse_of"]
+
+Holds = Callable[[Judged], np.ndarray]
 
 
 class Referee:
@@ -68,22 +72,30 @@ class Referee:
             len(Figures.names()),
         )
 
-    def judge(self, designs: FloatArray) -> Judged:
-        """Return n snapped designs (n, n_var) judged; those not yet known are evaluated."""
+    def judge(self, designs: FloatArray, holds: Holds | None = None) -> Judged:
+        """Return n snapped designs (n, n_var) judged; those not yet known are evaluated.
+
+        Parameters
+        ----------
+        designs : (n, n_var)
+        holds : callable, optional
+            Which judged designs, (n,), are worth the further frequencies; the feasible ones if
+            left out.
+        """
         keys = [row.tobytes() for row in designs]
         first = {key: i for i, key in reversed(list(enumerate(keys)))}
         new = sorted(i for key, i in first.items() if key not in self.archive)
         if new:
-            self.archive.add(self._evaluated(designs[new]))
+            self.archive.add(self._evaluated(designs[new], holds))
         return self.archive.find(keys)
 
-    def _evaluated(self, designs: FloatArray) -> Judged:
+    def _evaluated(self, designs: FloatArray, worthy: Holds | None) -> Judged:
         journal = self._journal
         recorded = None if journal is None else journal.replay(self.stage, designs)
         if recorded is not None:
             return Judged.from_numbers(designs, recorded, self.sizes)
         judged = self._judged(designs, self._frequencies)
-        holds = np.flatnonzero(judged.feasible)
+        holds = np.flatnonzero(judged.feasible if worthy is None else worthy(judged))
         if len(holds) and len(self._further):
             more = self._judged(designs[holds], self._further)
             whole = worse_of(self.rules, judged[holds], more)
