@@ -42,6 +42,9 @@ def blank_dxf(blank: Blank, *, name: str) -> str:
     try:
         document = new("R2010", units=units.MM)
         _draw(document, blank, "".join(c if c.isalnum() else " " for c in name))
+        # The library adds classes in the order of a set, which is another in every process.
+        for kind in sorted(document.entitydb.dxf_types_in_use()):
+            document.classes.add_class(kind)
         text = io.StringIO()
         document.write(text)
     finally:

@@ -52,5 +52,4 @@ def _write(folder: Path, part: str) -> None:
     elif part == "papers":
         write_run(folder, result)
     else:
-        # Data sheets and report show the cuts; only where nothing is built there is no sheet.
-        draw_run(folder / PICTURES, result, cuts=not result.met)
+        draw_run(folder / PICTURES, result)

@@ -62,15 +62,13 @@ _QUANTITIES: Final = {
 }
 
 
-def draw_run(folder: Path, result: Result, *, cuts: bool = True) -> list[Path]:
+def draw_run(folder: Path, result: Result) -> list[Path]:
     """Draw every picture of `result` into `folder`; return the files, in a reader's order.
 
     Parameters
     ----------
     folder : Path
     result : Result
-    cuts : bool
-        Also the cuts of every design put before the reader.
 
     Raises
     ------
@@ -96,7 +94,7 @@ def draw_run(folder: Path, result: Result, *, cuts: bool = True) -> list[Path]:
             names=names,
             bounds=requirements.limits,
         )
-        for row, name in enumerate(names if cuts else ()):
+        for row, name in enumerate(names):
             words = name.replace("_", " ")
             pictures[f"{name}_cuts"] = draw_cuts(
                 title=f"{words}: {requirements.title}",

@@ -3,6 +3,10 @@
 from __future__ import annotations
 
 import io
+import os
+import subprocess
+import sys
+from pathlib import Path
 from typing import Any, cast
 
 import numpy as np
@@ -93,3 +97,29 @@ def test_names_cannot_add_to_the_drawing() -> None:
     assert kinds.count("LINE") == 1
     texts = [cast(Any, e).dxf.text for e in document.modelspace() if e.dxftype() == "TEXT"]
     assert not any("%%" in text or "^" in text for text in texts)
+
+
+def test_same_bytes_in_every_process() -> None:
+    # Another seed of the hashes is another order of every set.
+    program = (
+        "import hashlib, numpy as np\n"
+        "from models import Build, Reflectors\n"
+        "from optim.cutting import blank_of\n"
+        "from optim.dxf import blank_dxf\n"
+        "design = Reflectors(apex_angle=1.2, spacing=0.17, plate_width=0.345, plate_length=0.4,\n"
+        "                    dipole_length=0.16, dipole_diameter=0.006)\n"
+        "text = blank_dxf(blank_of(design, Build()), name='smallest')\n"
+        "print(hashlib.sha256(text.encode()).hexdigest())\n"
+    )
+    digests = {
+        subprocess.run(
+            [sys.executable, "-c", program],
+            env={**os.environ, "PYTHONHASHSEED": seed},
+            cwd=Path(__file__).parents[1],
+            capture_output=True,
+            text=True,
+            check=True,
+        ).stdout
+        for seed in ("1", "2", "3")
+    }
+    assert len(digests) == 1

@@ -23,7 +23,7 @@ def contents(folder: Path) -> dict[str, bytes]:
     return {
         path.relative_to(folder).as_posix(): path.read_bytes()
         for path in folder.rglob("*")
-        if path.suffix not in {".dxf", ".jsonl"} and path.is_file()
+        if path.suffix != ".jsonl" and path.is_file()
     }
 
 
