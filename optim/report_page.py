@@ -28,7 +28,7 @@ from optim.report_quantities import (
     quantities,
 )
 from optim.requirements import Limit
-from optim.result import Result
+from optim.result import Result, signed
 from optim.style import mark_of
 from optim.tolerance_table import spread_rows, spread_words
 
@@ -194,9 +194,7 @@ def _cell(limit: Limit, margin: float) -> dict[str, Any]:
     reached = f"{-margin:+.2f} dB" if limit.figure in MASKS else f"{value:.{decimals}f}"
     return {
         "reached": minus(reached) if known else "–",
-        "margin": minus(f"{margin:+.0f}" if abs(margin) >= 99.5 else f"{margin:+.2g}")
-        if known
-        else "",
+        "margin": minus(signed(margin)) if known else "",
         "met": margin >= 0.0,
         "steps": round(margin / limit.scale, 3),
     }

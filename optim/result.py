@@ -29,7 +29,7 @@ from optim.tables import (
 from optim.tolerance import Spread
 from optim.tolerance_table import spread_object, spread_rows, spread_words
 
-__all__ = ["Result", "aligned"]
+__all__ = ["Result", "aligned", "signed"]
 
 MOST_TITLE: Final = 180
 """Letters of the title in a design file, which takes 200 with the role behind."""
@@ -210,7 +210,7 @@ class Result:
             asked = "envelope" if limit.key.startswith("mask") else f"{limit.sense} {limit.value:g}"
             sign = 1.0 if limit.sense == "min" else -1.0
             found = judged.margins[list(rows.values()), column]
-            cells = [f"{limit.value + sign * margin:.4g} ({margin:+.2g})" for margin in found]
+            cells = [f"{limit.value + sign * m:.4g} ({signed(m)})" for m in found]
             lines.append([limit.key, asked, *cells])
         for goal_column, goal in enumerate(self.requirements.goals):
             sign = 1.0 if goal.sense == "min" else -1.0
@@ -248,3 +248,8 @@ def aligned(lines: list[list[str]]) -> list[str]:
         ).rstrip()
         for line in lines
     ]
+
+
+def signed(margin: float) -> str:
+    """Return a margin with its sign, two digits or whole numbers."""
+    return f"{margin:+.0f}" if abs(margin) >= 99.5 else f"{margin:+.2g}"
