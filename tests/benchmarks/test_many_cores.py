@@ -51,7 +51,7 @@ def spec(folder: Path, *, population: int, generations: int, model: str) -> Path
 @pytest.mark.skipif((os.cpu_count() or 1) < 2, reason="needs two cores")
 def test_two_cores_against_one(tmp_path: Path) -> None:
     """A whole search by the full-wave model, the start of the workers included."""
-    path = spec(tmp_path, population=100, generations=8, model="moment")
+    path = spec(tmp_path, population=100, generations=25, model="moment")
     seconds = {}
     for jobs in (2, 1):
         began = time.perf_counter()
