@@ -9,6 +9,7 @@ Valid from w, L of about 0.6 λ.
 
 from __future__ import annotations
 
+from dataclasses import replace
 from functools import cache
 from typing import Final
 
@@ -17,11 +18,12 @@ from scipy.special import roots_jacobi
 
 from models.build import Build
 from models.conventions import ETA0, ComplexArray, FloatArray, decibels, wavenumber
-from models.dipole import far_field, mutual_impedance, near_field, terminal
+from models.dipole import far_field, mutual_impedance, terminal
 from models.edges import SingleArray, WaveArray, turn
 from models.geometry import Reflectors
 from models.pattern import CUT_ANGLES, Pattern
-from models.ray_currents import Corners, currents
+from models.ray_currents import currents
+from models.ray_sources import Corners, axial_field
 
 __all__ = ["radiate"]
 
@@ -89,6 +91,15 @@ def _edge_gauss(count: int) -> tuple[FloatArray, FloatArray]:
 
 
 @cache
+def _between(few: int, count: int) -> SingleArray:
+    """Return what interpolates, by a polynomial, from `few` edge nodes to `count`, (count, few)."""
+    x, y = _edge_gauss(few)[0], _edge_gauss(count)[0]
+    weights = 1.0 / np.prod(x[:, None] - x + np.eye(few), axis=1)
+    share = weights / (y[:, None] - x)
+    return _single(share / share.sum(axis=1, keepdims=True))
+
+
+@cache
 def _plain_gauss(count: int) -> tuple[FloatArray, FloatArray]:
     x, weights = np.polynomial.legendre.leggauss(count)
     return x, weights
@@ -116,17 +127,19 @@ def _solve(
         s=_single(s.T[:, None, :]),
         z=_single(z.T[None, :, :]),
     )
-    along_z, along_s = (np.ascontiguousarray(np.moveaxis(j, 2, 0)) for j in currents(corners))
+    n_few = max(n_s // 3 + 2, 2 * n_s // 3 - 4)
+    few = replace(corners, s=_single(_nodes(width, n_few)[0].T[:, None, :]))
+    surface = currents(corners, few, _between(n_few, n_s))
+    along_z, along_s = (np.ascontiguousarray(np.moveaxis(j, 2, 0)) for j in surface)
     weight = _single(weight_s[:, :, None] * weight_z[:, None, :])
     moment_z, moment_s = along_z * weight, along_s * weight
     h_field, e_field = _cuts(corners, moment_z, moment_s)
     power = _sphere_mean(corners, moment_z, moment_s)
     # Reaction on the dipole: both plates, both halves; the dipole's field is that for 1 A.
-    half = alpha[:, None] / 2.0
-    distance = np.hypot(s - spacing[:, None] * np.cos(half), spacing[:, None] * np.sin(half))
-    field = near_field(1.0, dipole[:, None, None], distance[:, :, None], z[:, None, :])
+    axial = axial_field(corners)
+    moments = surface[0] * np.ascontiguousarray(weight.transpose(1, 2, 0))
     reaction = mutual_impedance(1.0, dipole, diameter / 2.0)
-    reaction -= 4.0 * (field * moment_z).sum(axis=(1, 2))
+    reaction -= 4.0 * (axial * moments).sum(axis=(0, 1), dtype=np.complex128)
     # Two measures of one power: over the sphere the better ratio to the field (directivity), by
     # reaction the better resistance; how far they are apart is the model's own doubt.
     outward = ETA0 / np.pi * power

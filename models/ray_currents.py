@@ -21,16 +21,16 @@ J. Acoust. Soc. Am. 29 (1957).
 
 from __future__ import annotations
 
-from dataclasses import dataclass
 from typing import Final
 
 import numpy as np
 
-from models.edges import SingleArray, WaveArray, hard, seen_part, shed, soft, spread, tail, turn
+from models.edges import SingleArray, WaveArray, hard, seen_part, shed, soft, spread, tail
+from models.ray_sources import Corners, Sources, lobe, magnetic_field
 
-__all__ = ["Corners", "currents"]
+__all__ = ["currents"]
 
-_APEX_NODES: Final = 5
+_APEX_NODES: Final = 6
 _APEX_REACH: Final = 3.6
 _TINY: Final = 1e-12
 
@@ -46,106 +46,55 @@ def _apex_nodes() -> list[tuple[float, float]]:
 _APEX: Final = _apex_nodes()
 
 
-@dataclass(frozen=True, kw_only=True, eq=False)
-class Corners:
-    """Corners in order of rising apex angle, and the points on their plates; lengths times k.
+def currents(corners: Corners, few: Corners, between: SingleArray) -> tuple[WaveArray, WaveArray]:
+    """Return the current densities along z and along s at the points, (n_s, n_z, n).
 
-    Points come first and corners last here: the long axis has to be the inner one for speed.
+    What other edges diffract is smooth along s but for factors in closed form, so it is found at
+    few points and interpolated.
 
     Parameters
     ----------
-    apex_angle, spacing, plate_width, plate_length, dipole_length : (n,)
-        Radians, and lengths times k.
-    s, z : (n_s, 1, n), (1, n_z, n)
-        Distance from the apex line, and height over the middle, z >= 0.
+    corners : Corners
+        With the points that are asked for.
+    few : Corners
+        The same corners with fewer points along s, (n_few, 1, n).
+    between : (n_s, n_few)
+        What makes values at the asked points of those at the few.
     """
-
-    apex_angle: SingleArray
-    spacing: SingleArray
-    plate_width: SingleArray
-    plate_length: SingleArray
-    dipole_length: SingleArray
-    s: SingleArray
-    z: SingleArray
-
-    def first(self, count: int) -> Corners:
-        """Return the first `count` corners, views of the same memory."""
-        return Corners(**{name: value[..., :count] for name, value in vars(self).items()})
-
-    def lit(self) -> list[tuple[int, int]]:
-        """Return the orders j of images and how many corners have them: (j + 1/2)·α < π."""
-        most = int(np.ceil(np.pi / float(self.apex_angle[0])))
-        pairs = [(j, self.count(j + 0.5)) for j in range(most)]
-        return [(j, n) for j, n in pairs if n]
-
-    def count(self, orders: float) -> int:
-        """Return how many corners have `orders` times the apex angle below π."""
-        return int(np.count_nonzero(orders * self.apex_angle < np.pi - 1e-6))
-
-
-class _Sources:
-    """The dipole and its images as our plate sees them, q·α/2 from its face; each computed once."""
-
-    def __init__(self, corners: Corners) -> None:
-        self._corners = corners
-        self._known: dict[int, tuple[SingleArray, SingleArray, WaveArray]] = {}
-        self._bare: dict[int, WaveArray] = {}
-
-    def __call__(self, q: int, count: int) -> tuple[SingleArray, SingleArray, WaveArray]:
-        """Return ρ, direct path and H_φ (exact, 1 A) of source q for the first `count` corners."""
-        known = self._known.get(q)
-        if known is None or known[0].shape[-1] < count:
-            c = self._corners.first(count)
-            along = c.s - c.spacing * np.cos(0.5 * q * c.apex_angle)
-            rho2 = along * along + (c.spacing * np.sin(0.5 * q * c.apex_angle)) ** 2
-            rho = np.sqrt(rho2)
-            known = rho, np.sqrt(rho2 + c.z * c.z), magnetic_field(rho, c.z, c.dipole_length)
-            self._known[q] = known
-        rho, direct, field = known
-        return rho[..., :count], direct[..., :count], field[..., :count]
-
-    def bare(self, q: int, count: int) -> tuple[SingleArray, WaveArray]:
-        """Return direct path and H_φ over the dipole's far field in that direction."""
-        _, direct, field = self(q, count)
-        known = self._bare.get(q)
-        if known is None or known.shape[-1] < count:
-            c = self._corners.first(count)
-            known = self._bare[q] = field / _lobe(c, c.z / direct)
-        return direct, known[..., :count]
-
-
-def magnetic_field(rho: SingleArray, z: SingleArray, length: SingleArray) -> WaveArray:
-    """Return H_φ of the dipole for 1 A, exact, at transverse distance `rho` and height `z`."""
-    half = 0.5 * length
-    rho2 = rho * rho
-    total = turn(np.sqrt(rho2 + (z - half) ** 2))
-    total += turn(np.sqrt(rho2 + (z + half) ** 2))
-    total -= 2.0 * np.cos(half) * turn(np.sqrt(rho2 + z * z))
-    total *= 0.25j / np.pi
-    total /= rho
-    return total
-
-
-def currents(corners: Corners) -> tuple[WaveArray, WaveArray]:
-    """Return the current densities along z and along s at the points, (n_s, n_z, n)."""
-    sources = _Sources(corners)
-    along_z, along_s, at_ends = _image(corners, sources, 0)
-    z_part, s_part = _apex(corners)
-    along_z += z_part
-    along_s += s_part
+    sources, at_few = Sources(corners), Sources(few)
+    rim = hard(_root(2.0 * (corners.plate_width - corners.s)))
+    along_z, along_s = _apex(corners, few, between)
+    along_s *= rim
     orders = int(np.ceil(np.pi / float(corners.apex_angle[0])))
-    for j, n in corners.lit()[1:]:
-        z_part, s_part, _ = _image(corners.first(n), sources, j)
-        along_z[..., :n] += z_part
-        along_s[..., :n] += s_part
+    ends_of_first: WaveArray = along_z
+    for j, n in corners.lit():
+        optics = _image(corners.first(n), sources, j)
+        at_ends, oblique = (
+            _at_all(part, between) for part in _ends_of_image(few.first(n), at_few, j)
+        )
+        along_z[..., :n] += optics * _at_rim(corners.first(n), sources, j) * at_ends
+        along_s[..., :n] += optics * oblique * rim[..., :n]
+        if j == 0:
+            ends_of_first = at_ends
+    by_ends = np.zeros(np.broadcast_shapes(few.s.shape, few.z.shape), dtype=np.complex64)
     for m in range(1, 2 * orders):
         n = corners.count(m / 1.25)
         if n:
-            along_z[..., :n] += _rim(corners.first(n), sources, m) * at_ends[..., :n]
+            waves = _at_all(_rim(few.first(n), at_few, m), between)
+            along_z[..., :n] += waves * _rim_view(corners.first(n), m) * ends_of_first[..., :n]
         n = corners.count(m)
         if n:
-            along_z[..., :n] += _ends(corners.first(n), sources, m)
+            by_ends[..., :n] += _ends(few.first(n), at_few, m)
+    grazing = soft(_root(2.0 * (corners.plate_width - corners.s)))
+    along_z += _at_all(by_ends, between) * grazing
     return along_z, along_s
+
+
+def _at_all(values: WaveArray, between: SingleArray) -> WaveArray:
+    """Return `values` (n_few, n_z, n) at all points along s, (n_s, n_z, n)."""
+    few = values.shape[0]
+    flat = between.astype(np.complex64) @ np.ascontiguousarray(values).reshape(few, -1)
+    return np.asarray(flat.reshape(-1, *values.shape[1:]))
 
 
 def _root(square: SingleArray) -> SingleArray:
@@ -156,35 +105,52 @@ def _sign(order: int) -> float:
     return -1.0 if order % 2 else 1.0
 
 
-def _image(c: Corners, sources: _Sources, j: int) -> tuple[WaveArray, WaveArray, WaveArray]:
-    """Return the current of image j with rim and ends of our plate, and the factor of the ends."""
+def _image(c: Corners, sources: Sources, j: int) -> WaveArray:
+    """Return the current of geometrical optics that image j gives."""
+    rho, _, field = sources(2 * j + 1, c.apex_angle.size)
+    normal = c.spacing * np.sin((j + 0.5) * c.apex_angle)
+    return np.asarray(field * (-2.0 * _sign(j) * normal / rho))
+
+
+def _at_rim(c: Corners, sources: Sources, j: int) -> WaveArray:
+    """Return what our plate's rim makes of the current of image j."""
+    _, direct, _ = sources(2 * j + 1, c.apex_angle.size)
     w, turned = c.plate_width, (j + 0.5) * c.apex_angle
-    along, normal = c.spacing * np.cos(turned), c.spacing * np.sin(turned)
-    rho, direct, field = sources(2 * j + 1, c.apex_angle.size)
-    optics = field * (-2.0 * _sign(j) * normal / rho)
-    over = np.sqrt((np.sqrt((w - along) ** 2 + normal**2) + w - c.s) ** 2 + c.z * c.z)
-    at_rim = 1.0 + (soft(_root(over - direct)) - 1.0) * spread(direct, over)
-    at_ends, oblique = _own_ends(c, direct, along, normal)
-    return optics * at_rim * at_ends, optics * oblique * hard(_root(2.0 * (w - c.s))), at_ends
+    before = np.sqrt((w - c.spacing * np.cos(turned)) ** 2 + (c.spacing * np.sin(turned)) ** 2)
+    over = np.sqrt((before + w - c.s) ** 2 + c.z * c.z)
+    factor = soft(_root(over - direct))
+    factor -= 1.0
+    factor *= spread(direct, over)
+    factor += 1.0
+    return factor
 
 
-def _apex(c: Corners) -> tuple[WaveArray, WaveArray]:
-    """Return the current of the wave the apex diffracts, ends of our plate included."""
-    s, z, w, spacing = c.s, c.z, c.plate_width, c.spacing
+def _ends_of_image(c: Corners, sources: Sources, j: int) -> tuple[WaveArray, WaveArray]:
+    """Return what our plate's ends make of the current of image j: along z, and along s."""
+    _, direct, _ = sources(2 * j + 1, c.apex_angle.size)
+    turned = (j + 0.5) * c.apex_angle
+    return _own_ends(c, direct, c.spacing * np.cos(turned), c.spacing * np.sin(turned))
+
+
+def _apex(corners: Corners, few: Corners, between: SingleArray) -> tuple[WaveArray, WaveArray]:
+    """Return the current of the wave the apex diffracts: along z, and along s without our rim."""
+    c, spacing = few, few.spacing
     p = np.pi / c.apex_angle
     cosine2 = np.cos(np.pi * p) ** 2
-    total = np.zeros(np.broadcast_shapes(s.shape, z.shape), dtype=np.result_type(s, 1j))
+    total = np.zeros(np.broadcast_shapes(c.s.shape, c.z.shape), dtype=np.complex64)
     for y, step in _APEX:
         rise = np.sinh(p * y)
-        rho = np.sqrt(spacing**2 + s * s + (2.0 * float(np.cosh(y))) * spacing * s)
+        rho = np.sqrt(spacing**2 + c.s * c.s + (2.0 * float(np.cosh(y))) * spacing * c.s)
         kernel = (2.0 * step * float(np.sinh(y))) * rise / (rise * rise + cosine2) * spacing / rho
-        total += kernel * magnetic_field(rho, z, c.dipole_length)
-    optics = total * (-p / np.pi * np.sin(np.pi * p))
-    direct = np.sqrt((spacing + s) ** 2 + z * z)
-    over = np.sqrt((spacing + 2.0 * w - s) ** 2 + z * z)
+        total += kernel * magnetic_field(rho, c.z, c.dipole_length)
+    total *= -p / np.pi * np.sin(np.pi * p)
+    direct = np.sqrt((spacing + c.s) ** 2 + c.z * c.z)
     at_ends, oblique = _own_ends(c, direct, -spacing, np.zeros_like(spacing))
-    at_rim = soft(_root(over - direct))
-    return optics * at_rim * at_ends, optics * oblique * hard(_root(2.0 * (w - s)))
+    c = corners
+    direct = np.sqrt((c.spacing + c.s) ** 2 + c.z * c.z)
+    over = np.sqrt((c.spacing + 2.0 * c.plate_width - c.s) ** 2 + c.z * c.z)
+    along_z = _at_all(total * at_ends, between) * soft(_root(over - direct))
+    return along_z, _at_all(total * oblique, between)
 
 
 def _own_ends(
@@ -197,7 +163,7 @@ def _own_ends(
     """
     half = 0.5 * c.plate_length
     before = np.sqrt(normal * normal + half * half)  # source to edge, square to the edge
-    lobe = _lobe(c, c.z / direct)
+    towards = lobe(c, c.z / direct)
     at_ends: WaveArray = np.ones(direct.shape, dtype=np.complex64)
     oblique: WaveArray = np.zeros(direct.shape, dtype=np.complex64)
     shift = c.s - along
@@ -207,8 +173,8 @@ def _own_ends(
         over = np.sqrt(path * path + shift * shift)
         zeta = _root(over - direct)
         on_edge = shift * before / path
-        strength = spread(direct, over) / lobe
-        strength *= _lobe(c, half / np.sqrt(on_edge * on_edge + before * before))
+        strength = spread(direct, over) / towards
+        strength *= lobe(c, half / np.sqrt(on_edge * on_edge + before * before))
         ray = (along, before), (c.s, behind), over
         share = strength * _beside(0.0, *ray, on_edge + along)
         share *= _beside(c.plate_width, *ray, c.plate_width - along - on_edge)
@@ -218,13 +184,6 @@ def _own_ends(
         edge_current = shed(zeta)
         oblique = oblique + edge_current * share * (sense * shift / path)
     return at_ends, oblique
-
-
-def _lobe(c: Corners, cosine: SingleArray) -> SingleArray:
-    """Return the dipole's far field at the angle of `cosine` from its axis."""
-    half = 0.5 * c.dipole_length
-    cosine = np.minimum(cosine, 1.0 - 1e-5)
-    return np.asarray((np.cos(half * cosine) - np.cos(half)) / np.sqrt(1.0 - cosine * cosine))
 
 
 def _beside(
@@ -245,8 +204,8 @@ def _beside(
     return seen_part(_root(path - over), inside)
 
 
-def _rim(c: Corners, sources: _Sources, m: int) -> WaveArray:
-    """Return the current by the rim seen at m·α from our plate, lit by all images, without ends."""
+def _rim(c: Corners, sources: Sources, m: int) -> WaveArray:
+    """Return the current by the rim seen at m·α from our plate, lit by all images, unbounded."""
     s, z, w = c.s, c.z, c.plate_width
     seen = m * c.apex_angle
     after = np.sqrt((s - w * np.cos(seen)) ** 2 + (w * np.sin(seen)) ** 2)
@@ -275,13 +234,20 @@ def _rim(c: Corners, sources: _Sources, m: int) -> WaveArray:
             part *= field
             part *= (2.0 * sense * _sign(j + m + 1)) * spread(direct, over)
             total[..., :n] += part
+    return total
+
+
+def _rim_view(c: Corners, m: int) -> WaveArray:
+    """Return what our plate's rim and the apex make of the wave of the rim seen at m·α."""
+    s, w, seen = c.s, c.plate_width, m * c.apex_angle
+    after = np.sqrt((s - w * np.cos(seen)) ** 2 + (w * np.sin(seen)) ** 2)
     steepness = _steepness(c, after)
     across = np.sqrt(2.0 * w * w * (1.0 - np.cos(seen)))
-    total *= soft(_root(steepness * (across + w - s - after)))
+    view = soft(_root(steepness * (across + w - s - after)))
     # Past the line of our plate the rim fades behind the apex.
     fade = np.clip(5.0 - 4.0 * seen / np.pi, 0.0, 1.0) ** 2
-    total *= seen_part(_root(steepness * (w + s - after)), np.pi - seen) * fade
-    return total
+    view *= seen_part(_root(steepness * (w + s - after)), np.pi - seen) * fade
+    return view
 
 
 def _steepness(c: Corners, after: SingleArray) -> SingleArray:
@@ -293,8 +259,8 @@ def _steepness(c: Corners, after: SingleArray) -> SingleArray:
     return np.asarray(path / np.sqrt(path * path + c.z * c.z))
 
 
-def _ends(c: Corners, sources: _Sources, m: int) -> WaveArray:
-    """Return the current by the ends of the plate seen at m·α from ours, lit by all images."""
+def _ends(c: Corners, sources: Sources, m: int) -> WaveArray:
+    """Return the current by the ends of the plate seen at m·α, lit by all images; not our rim."""
     total = np.zeros(np.broadcast_shapes(c.s.shape, c.z.shape), dtype=np.complex64)
     for j, n in c.lit():
         b = c.first(n)
@@ -316,7 +282,7 @@ def _ends(c: Corners, sources: _Sources, m: int) -> WaveArray:
             # Along that edge the diffracted wave has H of (an/ρ) and E/η of (end·on_edge/(ρ·R)),
             # which turns sign with the image; square to the plate H follows from both. Our plate
             # takes cosine of the one and sine of the other.
-            shared = (-2.0 * _sign(j + m + 1)) * _lobe(b, half / to_edge) / np.sqrt(rho2)
+            shared = (-2.0 * _sign(j + m + 1)) * lobe(b, half / to_edge) / np.sqrt(rho2)
             by_h = an * (np.cos(seen) - np.sin(seen) * (dx / path) * (pn / after)) * shared
             by_e = end * on_edge * over * beyond / (to_edge * path * after)
             by_e = by_e * (-np.sin(seen) * shared)
@@ -331,4 +297,4 @@ def _ends(c: Corners, sources: _Sources, m: int) -> WaveArray:
             part *= _beside(0.0, (ax, before), (px, after), over, ax + on_edge)
             part *= hard(_root(path / over * (np.abs(pn) + np.abs(beyond) - after)))
             total[..., :n] += part
-    return total * soft(_root(2.0 * (c.plate_width - c.s)))
+    return total

@@ -12,6 +12,7 @@ ROOT = Path(__file__).parents[1]
 TESTED_ELSEWHERE = {
     "models/conventions.py": "constants and two one-line functions, used by every test",
     "models/pattern.py": "a record and a row of angles, made and read in test_figures.py",
+    "models/ray_sources.py": "the near fields behind the currents that test_ray.py checks",
     "models/ray_currents.py": "the currents whose radiation test_ray.py checks",
     "optim/analysis.py": "the object and table that test_cli.py reads",
     "optim/checks.py": "what test_requirements.py and test_designfile.py refuse",
