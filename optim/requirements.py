@@ -36,7 +36,7 @@ __all__ = [
 
 Sense = Literal["min", "max"]
 
-BAND_STEP: Final = 0.04
+BAND_STEP: Final = 0.06
 """Largest derived step between neighbouring band points over the lowest frequency."""
 
 FOLDED_RATIO: Final = 4.0

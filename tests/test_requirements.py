@@ -171,7 +171,7 @@ def test_goals_alone_can_need_a_match(tmp_path: Path, goal: str) -> None:
 @pytest.mark.parametrize(
     ("low", "high"), [(470, 694), (902, 928), (100, 400), (300, 301), (88, 108)]
 )
-def test_derived_points_are_odd_and_at_most_four_percent_apart(
+def test_derived_points_are_odd_and_at_most_six_percent_apart(
     tmp_path: Path, low: float, high: float
 ) -> None:
     band = read(tmp_path, GOOD.replace("902", f"{low}").replace("928", f"{high}")).band
@@ -179,7 +179,7 @@ def test_derived_points_are_odd_and_at_most_four_percent_apart(
     assert (f[0], f[-1]) == (low * 1e6, high * 1e6)
     assert band.points % 2 == 1
     assert band.points >= 3
-    assert (f[1:] / f[:-1]).max() <= 1.04 + 1e-9
+    assert (f[1:] / f[:-1]).max() <= 1.06 + 1e-9
     fine = band.refined().frequencies()
     assert fine.size == 2 * band.points - 1
     assert fine[::2] == pytest.approx(f)
