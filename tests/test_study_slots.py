@@ -120,10 +120,12 @@ def test_a_process_that_dies_fails_its_run_only(tmp_path: Path) -> None:
     outcomes = {}
     # Workers that earlier tests left idle are none of this study's.
     before = set(multiprocessing.active_children())
+    alive = True
     for event in work(folder, tasks, jobs=1):
-        if isinstance(event, Told) and event.number == 1:
+        if isinstance(event, Told) and event.number == 1 and alive:
             (process,) = set(multiprocessing.active_children()) - before
             process.kill()
+            alive = False
         elif isinstance(event, Done):
             outcomes[event.number] = event.outcome
     assert outcomes[1].reason == "its process ended by signal 9; out of memory?"
