@@ -21,6 +21,9 @@ __all__ = ["Figures", "Terms", "figures_of_merit", "vswr"]
 WELL_INSIDE: Final = -60.0
 """Excess over an envelope that stands for 'not to the point', dB."""
 
+FAR_BELOW: Final = -400.0
+"""Level that stands for a null where levels are interpolated, dB."""
+
 
 @dataclass(frozen=True, kw_only=True)
 class Terms:
@@ -164,7 +167,7 @@ def half_power_angle(angles: FloatArray, level_db: FloatArray) -> FloatArray:
 
     def level(index: np.ndarray) -> FloatArray:
         inside = np.clip(index, 0, angles.size - 1)
-        return np.asarray(np.maximum(np.take_along_axis(level_db, inside, axis=-1), -400.0))
+        return np.asarray(np.maximum(np.take_along_axis(level_db, inside, axis=-1), FAR_BELOW))
 
     high, low = level(after - 1), level(after)
     # A parabola's correction to the straight line: mean second difference of the four neighbours.
@@ -203,8 +206,8 @@ def _excess(
     step = angles[1] - angles[0]
     left = np.minimum((checked / step).astype(np.intp), angles.size - 2)
     part = checked / step - left
-    with np.errstate(invalid="ignore"):
-        level = level_db[..., left] * (1.0 - part) + level_db[..., left + 1] * part
+    finite = np.maximum(level_db, FAR_BELOW)  # a null times no part of it would be no number
+    level = finite[..., left] * (1.0 - part) + finite[..., left + 1] * part
     # Levels are relative to boresight: where 0 dB is allowed, keeping it is no close call.
     kept = (allowed >= 0.0) & (level <= allowed + 1e-9)
     return np.asarray(np.where(kept, WELL_INSIDE, level - allowed).max(axis=-1))

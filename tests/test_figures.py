@@ -95,6 +95,21 @@ def test_step_in_an_envelope() -> None:
     assert found == pytest.approx(6.0 - 8.6859 * np.radians(30.0), abs=0.02)
 
 
+def test_envelope_about_a_null() -> None:
+    # |f| = cos²θ ahead, and from 88° on nothing at all, as beside the dipole of `modal`.
+    cut = np.where(np.degrees(CUT_ANGLES) < 87.0, np.cos(CUT_ANGLES) ** 2, 0.0)
+
+    def excess(first: float, last: float) -> float:
+        mask = ((np.radians(first), -30.0), (np.radians(last), -30.0))
+        return float(figures_of_merit(pattern(cut), Terms(mask_e=mask)).mask_e_db[0, 0])
+
+    at_68 = 40.0 * np.log10(np.cos(np.radians(68.0)))
+    assert excess(68.0, 90.0) == pytest.approx(30.0 + at_68, abs=1e-9)
+    assert excess(0.0, 180.0) == pytest.approx(30.0)
+    for ends in ((88.0, 90.0), (89.0, 91.0), (178.0, 180.0)):
+        assert excess(*ends) < -300.0
+
+
 def test_folded_dipole_has_four_times_the_impedance() -> None:
     terms = Terms(impedance_ratio=4.0, reference_ohm=200.0)
     figures = figures_of_merit(pattern(np.ones(CUT_ANGLES.size)), terms)
