@@ -10,7 +10,6 @@ from dataclasses import dataclass
 from typing import Final
 
 import numpy as np
-from rich.table import Table
 
 from models import MODELS, Figures, radiate
 from models.build import mass
@@ -21,8 +20,9 @@ from models.pattern import Pattern
 from optim.designfile import Design
 from optim.margins import GREATEST_DIP_DB
 from optim.requirements import DEFAULT_RESISTANCE_OHM
+from optim.tables import aligned
 
-__all__ = ["FIGURES", "Analysis", "analyse", "as_json", "table_of"]
+__all__ = ["FIGURES", "Analysis", "analyse", "as_json", "words"]
 
 FIGURES: Final = {
     "directivity_dbi": ("directivity", "dBi", 2),
@@ -94,19 +94,33 @@ def as_json(analysis: Analysis) -> dict[str, object]:
     }
 
 
-def table_of(analysis: Analysis) -> Table:
-    """Return the figures as a table, at up to five frequencies spread over the band."""
+def words(analysis: Analysis) -> str:
+    """Return the analysis as a page of plain text."""
+    sizes = analysis.sizes()
+    box = " × ".join(f"{sizes[f'{side}_mm']:.0f}" for side in ("width", "height", "depth"))
+    return "\n".join(
+        [
+            analysis.design.title,
+            f"model {analysis.model}: {MODELS[analysis.model].summary}",
+            "",
+            *aligned(list(_rows(analysis))),
+            "",
+            f"width × height × depth {box} mm; frontal area {sizes['frontal_area_m2']:.4f} m², "
+            f"sheet {sizes['sheet_area_m2']:.4f} m², mass {sizes['mass_kg']:.2f} kg",
+            *(f"Note: {warning}" for warning in analysis.warnings),
+        ]
+    )
+
+
+def _rows(analysis: Analysis) -> Iterator[list[str]]:
+    """Yield the figures as rows of a table, at up to five frequencies spread over the band."""
     count = analysis.frequencies.size
     shown = np.unique(np.linspace(0, count - 1, min(count, MOST_COLUMNS)).round().astype(int))
-    table = Table(box=None, pad_edge=False, header_style="")
-    table.add_column("MHz")
-    for place in shown:
-        table.add_column(f"{analysis.frequencies[place] / 1e6:g}", justify="right")
-    for name, (words, unit, decimals) in FIGURES.items():
+    yield ["MHz", *(f"{analysis.frequencies[place] / 1e6:g}" for place in shown)]
+    for name, (label, unit, decimals) in FIGURES.items():
         values = getattr(analysis.figures, name)[0][shown]
         cells = [f"{v:.{decimals}f}" if np.isfinite(v) else "–" for v in values]
-        table.add_row(f"{words}, {unit}" if unit else words, *cells)
-    return table
+        yield [f"{label}, {unit}" if unit else label, *cells]
 
 
 def _limits_of(model: str, design: Design) -> Iterator[str]:

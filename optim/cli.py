@@ -9,7 +9,7 @@ from __future__ import annotations
 import functools
 import io
 import json
-import os
+import shlex
 import sys
 from collections.abc import Callable, Sequence
 from importlib.metadata import version
@@ -19,10 +19,9 @@ from typing import Annotated, Final, ParamSpec
 
 import typer
 from joblib import cpu_count
-from rich.console import Console
 
 from models import MODELS
-from optim.analysis import Analysis, analyse, as_json, table_of
+from optim.analysis import analyse, as_json, words
 from optim.cluster import ClusterError
 from optim.designfile import read_design
 from optim.faults import SpecError
@@ -31,6 +30,7 @@ from optim.overview import overview
 from optim.precheck import findings
 from optim.requirements import default_model, read_requirements
 from optim.space import DesignSpace
+from optim.streams import say
 from optim.study_file import StudyError
 
 __all__ = ["app", "main", "step"]
@@ -41,11 +41,6 @@ BAD_INPUT: Final = 2
 INTERRUPTED: Final = 130
 
 P = ParamSpec("P")
-
-Cluster = Annotated[
-    str | None,
-    typer.Option(metavar="ADDRESS", help="Of a Dask scheduler whose workers do the work."),
-]
 
 app = typer.Typer(
     name="apexfront",
@@ -67,17 +62,12 @@ def step(command: Callable[P, int]) -> Callable[P, None]:
     def run(*args: P.args, **kwargs: P.kwargs) -> None:
         try:
             code = command(*args, **kwargs)
-            sys.stdout.flush()
         except (SpecError, JournalError, ClusterError, StudyError) as error:
             message(str(error))
             code = BAD_INPUT
         except KeyboardInterrupt as interrupt:
             message(str(interrupt) or "interrupted")
             code = INTERRUPTED
-        except BrokenPipeError:
-            # The reader of our output has seen enough; keep the interpreter from trying again.
-            os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
-            code = DONE
         except OSError as error:
             place = f"{error.filename}: " if error.filename else ""
             message(f"{place}{error.strerror or error}")
@@ -87,9 +77,14 @@ def step(command: Callable[P, int]) -> Callable[P, None]:
     return run
 
 
+def answer(text: str) -> None:
+    """Print a result, on stdout."""
+    say(text, sys.stdout)
+
+
 def message(text: str) -> None:
     """Print `text` on stderr."""
-    print(text, file=sys.stderr)
+    say(text, sys.stderr)
 
 
 def model_name(value: str | None) -> str | None:
@@ -107,8 +102,25 @@ def prover_name(value: str | None) -> str | None:
 
 def _print_version(value: bool) -> None:
     if value:
-        print(f"apexfront {version('apexfront')}")
+        answer(f"apexfront {version('apexfront')}")
         raise typer.Exit(DONE)
+
+
+Spec = Annotated[Path, typer.Argument(metavar="SPEC", help="Requirements file.")]
+Out = Annotated[
+    Path | None,
+    typer.Option(metavar="DIR", help="Folder of results; runs/ and the file's name if left out."),
+]
+Jobs = Annotated[
+    int | None,
+    typer.Option(metavar="N", min=1, help="Worker processes; all cores if left out."),
+]
+Cluster = Annotated[
+    str | None,
+    typer.Option(metavar="ADDRESS", help="Of a Dask scheduler whose workers do the work."),
+]
+Resume = Annotated[bool, typer.Option("--resume", help="Go on with what is in the folder.")]
+Quiet = Annotated[bool, typer.Option("--quiet", help="No progress, no messages.")]
 
 
 @app.callback()
@@ -126,7 +138,9 @@ def _options(
 @app.command("new")
 @step
 def new(
-    file: Annotated[Path, typer.Argument(help="File to write; must not exist yet.")],
+    file: Annotated[
+        Path, typer.Argument(metavar="FILE", help="File to write; must not exist yet.")
+    ],
 ) -> int:
     """Write a commented requirements file to start from."""
     template = files("optim").joinpath("template.toml").read_text(encoding="utf-8")
@@ -136,35 +150,27 @@ def new(
     except FileExistsError:
         message(f"{file}: exists already and is left as it is; name a new file")
         return BAD_INPUT
-    message(f"wrote {file}; next: apexfront check {file}")
+    message(f"wrote {file}; next: {shlex.join(['apexfront', 'check', str(file)])}")
     return DONE
 
 
 @app.command("check")
 @step
-def check(
-    spec: Annotated[Path, typer.Argument(help="Requirements file.")],
-) -> int:
+def check(spec: Spec) -> int:
     """Say how a requirements file is understood, and what physics already rules out."""
     requirements = read_requirements(spec)
     space = DesignSpace.from_requirements(requirements)
     found = findings(requirements, space)
-    print("\n".join(overview(requirements, space, found)))
+    answer("\n".join(overview(requirements, space, found)))
     return NOT_MET if any(finding.ruled_out for finding in found) else DONE
 
 
 @app.command("search")
 @step
 def search(
-    spec: Annotated[Path, typer.Argument(metavar="SPEC", help="Requirements file.")],
-    out: Annotated[
-        Path | None,
-        typer.Option(metavar="DIR", help="Folder of results; runs/ and SPEC's name if left out."),
-    ] = None,
-    jobs: Annotated[
-        int | None,
-        typer.Option(metavar="N", min=1, help="Worker processes; all cores if left out."),
-    ] = None,
+    spec: Spec,
+    out: Out = None,
+    jobs: Jobs = None,
     seed: Annotated[
         int | None, typer.Option(metavar="N", min=0, help="Of the random generator.")
     ] = None,
@@ -183,10 +189,8 @@ def search(
         ),
     ] = None,
     cluster: Cluster = None,
-    resume: Annotated[
-        bool, typer.Option("--resume", help="Go on with the run in the folder.")
-    ] = False,
-    quiet: Annotated[bool, typer.Option("--quiet", help="No progress, no messages.")] = False,
+    resume: Resume = False,
+    quiet: Quiet = False,
 ) -> int:
     """Find the smallest antennas that meet the requirements."""
     from optim.finish import finish  # matplotlib and pymoo are slow to start
@@ -203,7 +207,7 @@ def search(
         cluster=cluster,
     )
     result = run(spec, options)
-    print(result.text())
+    answer(result.text())
     report = finish(out or Path(DEFAULT_FOLDER) / spec.stem, jobs or cpu_count())
     if not quiet:
         message(f"wrote papers, pictures and {report}")
@@ -213,14 +217,12 @@ def search(
 @app.command("report")
 @step
 def report_of(
-    folder: Annotated[
-        Path, typer.Argument(metavar="DIR", help="Folder of a finished search.", show_default=False)
-    ],
+    folder: Annotated[Path, typer.Argument(metavar="DIR", help="Folder of a finished search.")],
 ) -> int:
     """Make the report of a finished search again from its data, papers and pictures as well."""
     from optim.finish import finish  # matplotlib and pymoo are slow to start
 
-    print(finish(folder, cpu_count()))
+    answer(str(finish(folder, cpu_count())))
     return DONE
 
 
@@ -228,19 +230,11 @@ def report_of(
 @step
 def study_of(
     study: Annotated[Path, typer.Argument(metavar="STUDY", help="Study file.")],
-    out: Annotated[
-        Path | None,
-        typer.Option(metavar="DIR", help="Folder of results; runs/ and STUDY's name if left out."),
-    ] = None,
-    jobs: Annotated[
-        int | None,
-        typer.Option(metavar="N", min=1, help="Workers for all runs; all cores if left out."),
-    ] = None,
+    out: Out = None,
+    jobs: Jobs = None,
     cluster: Cluster = None,
-    resume: Annotated[
-        bool, typer.Option("--resume", help="Go on with the study in the folder.")
-    ] = False,
-    quiet: Annotated[bool, typer.Option("--quiet", help="No progress, no messages.")] = False,
+    resume: Resume = False,
+    quiet: Quiet = False,
     status: Annotated[
         bool, typer.Option("--status", help="Only say how far the study in the folder is.")
     ] = False,
@@ -249,18 +243,18 @@ def study_of(
     from optim import study as studies  # pymoo is slow to start
 
     if status:
-        print(studies.status(study, out))
+        answer(studies.status(study, out))
         return DONE
     options = studies.StudyOptions(out=out, jobs=jobs, cluster=cluster, resume=resume, quiet=quiet)
     result = studies.study(study, options)
-    print(result.text())
+    answer(result.text())
     return NOT_MET if result.failed else DONE
 
 
 @app.command("analyse")
 @step
 def analyse_design(
-    design: Annotated[Path, typer.Argument(help="Design file.")],
+    design: Annotated[Path, typer.Argument(metavar="DESIGN", help="Design file.")],
     model: Annotated[
         str | None,
         typer.Option(
@@ -279,27 +273,24 @@ def analyse_design(
 ) -> int:
     """Give the figures of merit of one design over its band."""
     analysis = analyse(read_design(design), model or default_model("moment", "ray", "image"))
-    if as_object:
-        print(json.dumps(as_json(analysis), indent=2, allow_nan=False))
-    else:
-        _print_analysis(analysis)
+    data = json.dumps(as_json(analysis), indent=2, allow_nan=False)
+    answer(data if as_object else words(analysis))
     if out is not None:
-        _write_analysis(analysis, out)
+        from optim.analysis_files import write  # matplotlib is slow to start
+
+        message(f"wrote {', '.join(write(out, analysis))} to {out}")
     return DONE
 
 
 @app.command("trade")
 @step
 def trade_off(
-    spec: Annotated[Path, typer.Argument(metavar="SPEC", help="Requirements file.")],
+    spec: Spec,
     out: Annotated[
         Path | None,
         typer.Option(metavar="DIR", help="Folder; runs/ and SPEC's name with -trade if left out."),
     ] = None,
-    jobs: Annotated[
-        int | None,
-        typer.Option(metavar="N", min=1, help="Worker processes; all cores if left out."),
-    ] = None,
+    jobs: Jobs = None,
     model: Annotated[
         str | None,
         typer.Option(
@@ -309,69 +300,19 @@ def trade_off(
         ),
     ] = None,
     cluster: Cluster = None,
-    quiet: Annotated[bool, typer.Option("--quiet", help="No progress, no messages.")] = False,
+    quiet: Quiet = False,
 ) -> int:
     """Show how the figures move, and what each requirement costs in size."""
     from optim.trade import Options, trade  # pymoo and matplotlib are slow to start
-    from optim.trade_files import words, write
+    from optim.trade_files import page, write
 
     found = trade(spec, Options(out=out, jobs=jobs, model=model, quiet=quiet, cluster=cluster))
     folder = out or Path("runs") / f"{spec.stem}-trade"
     files = write(folder, found)
-    print(words(found))
+    answer(page(found))
     if not quiet:
         message(f"wrote {', '.join(files)} to {folder}")
     return DONE if found.met else NOT_MET
-
-
-def _print_analysis(analysis: Analysis) -> None:
-    console = Console(markup=False, highlight=False, emoji=False, soft_wrap=True)
-    with console.capture() as table:
-        console.print(table_of(analysis))
-    print(analysis.design.title)
-    print(f"model {analysis.model}: {MODELS[analysis.model].summary}\n")
-    print(table.get())
-    sizes = analysis.sizes()
-    box = " × ".join(f"{sizes[f'{side}_mm']:.0f}" for side in ("width", "height", "depth"))
-    print(
-        f"width × height × depth {box} mm; frontal area {sizes['frontal_area_m2']:.4f} m², "
-        f"sheet {sizes['sheet_area_m2']:.4f} m², mass {sizes['mass_kg']:.2f} kg"
-    )
-    for warning in analysis.warnings:
-        print(f"Note: {warning}")
-
-
-def _write_analysis(analysis: Analysis, folder: Path) -> None:
-    """Write data, cuts, band curves and the drawing of an analysis into `folder`."""
-    from optim.drawing import draw_sheet  # matplotlib is slow to start
-    from optim.plot_band import draw_band
-    from optim.plot_cuts import draw_cuts
-    from optim.style import save
-
-    design, title = analysis.design, analysis.design.title
-    band = design.band.low_hz, design.band.high_hz
-    folder.mkdir(parents=True, exist_ok=True)
-    data = json.dumps(as_json(analysis), indent=2, allow_nan=False)
-    (folder / "analysis.json").write_text(data + "\n", encoding="utf-8")
-    pictures = {
-        "cuts.png": draw_cuts(
-            title=title,
-            pattern=analysis.pattern,
-            frequencies_hz=analysis.frequencies,
-            terms=design.terms,
-            model=analysis.model,
-        ),
-        "band.png": draw_band(
-            title=title,
-            frequencies_hz=analysis.frequencies,
-            figures=analysis.figures,
-            names=[analysis.model],
-        ),
-        "drawing.svg": draw_sheet(design.reflectors, title=title, build=design.build, band_hz=band),
-    }
-    for name, figure in pictures.items():
-        save(figure, folder / name)
-    message(f"wrote analysis.json, {', '.join(pictures)} to {folder}")
 
 
 def main(arguments: Sequence[str] | None = None) -> int:

@@ -6,6 +6,8 @@ folder gives the same bytes. The parts are written side by side on several proce
 
 from __future__ import annotations
 
+import shlex
+import signal
 from pathlib import Path
 from typing import Final
 
@@ -35,14 +37,26 @@ def finish(folder: Path, jobs: int = 1) -> Path:
         For a folder without a finished search, and for damaged files.
     OSError
         Where a file cannot be read or written.
+    KeyboardInterrupt
+        When interrupted, with the words how to go on.
     """
     read_outcome(folder)
     parts = [part for part in PARTS if part != "patterns" or not is_current(folder)]
-    with parallel_config("loky", inner_max_num_threads=1):
-        Parallel(n_jobs=min(jobs, len(PARTS)), batch_size=1)(
-            delayed(_write)(folder, part) for part in parts
-        )
-    return make_report(folder)
+    try:
+        with parallel_config("loky", inner_max_num_threads=1, initializer=_deaf_to_interrupts):
+            Parallel(n_jobs=min(jobs, len(PARTS)), batch_size=1)(
+                delayed(_write)(folder, part) for part in parts
+            )
+        return make_report(folder)
+    except KeyboardInterrupt as interrupt:
+        again = shlex.join(["apexfront", "report", str(folder)])
+        msg = f"interrupted; what the search found is saved. Go on with: {again}"
+        raise KeyboardInterrupt(msg) from interrupt
+
+
+def _deaf_to_interrupts() -> None:
+    """Let Ctrl-C reach the main process only, which then ends its workers."""
+    signal.signal(signal.SIGINT, signal.SIG_IGN)
 
 
 def _write(folder: Path, part: str) -> None:

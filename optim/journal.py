@@ -91,7 +91,7 @@ class Journal:
     Parameters
     ----------
     path : Path
-        The file; its folder must exist.
+        The file; its folder is made if need be.
     header : Header
         What the run about to start depends on.
     resume : bool
@@ -100,14 +100,16 @@ class Journal:
     Raises
     ------
     JournalError
-        For a file that cannot be written or is being written by another process, for a journal
-        that exists and `resume` is false, and for one made under another header.
+        For a folder or file that cannot be written or is being written by another process, for a
+        journal that exists and `resume` is false, and for one made under another header.
     """
 
     def __init__(self, path: Path, header: Header, *, resume: bool) -> None:
         self._path = path
         self._recorded: deque[dict[str, Any]] = deque()
         self._line = 1
+        with _explained(path.parent, "made"):
+            path.parent.mkdir(parents=True, exist_ok=True)
         with _explained(path, "opened"):
             self._file: FileIO = path.open("ab", buffering=0)
         try:

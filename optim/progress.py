@@ -7,20 +7,22 @@ are left out only when quiet.
 from __future__ import annotations
 
 import math
+import sys
 import time
 from collections.abc import Callable, Iterator
 from contextlib import contextmanager
 from functools import partial
 from types import TracebackType
-from typing import Final, Self
+from typing import Any, Final, Self
 
 from rich.console import Console
 from rich.progress import BarColumn, TaskID, TextColumn, TimeRemainingColumn
 from rich.progress import Progress as Bars
 
 from optim.referee import Referee
+from optim.streams import silence
 
-__all__ = ["Progress"]
+__all__ = ["Display", "Progress", "found"]
 
 REDRAW: Final = 0.5
 """Least time between two pictures of the bar, s; drawing one takes some milliseconds."""
@@ -29,31 +31,43 @@ SQUARE_CENTIMETRES: Final = 1e4
 """cm² in a square metre."""
 
 
-class Progress:
-    """What the user sees while a search runs.
+class Stderr(Console):
+    """Standard error; where nobody reads it any more the work goes on in silence."""
+
+    def on_broken_pipe(self) -> None:
+        """Write no more."""
+        self.quiet = True
+        silence(sys.stderr)
+
+
+class Display:
+    """Bars on a terminal and messages of one line; nothing at all when quiet.
 
     Parameters
     ----------
+    count : str
+        How a bar tells where it stands.
     quiet : bool
         Write nothing at all.
     console : Console, optional
         Where to write; stderr if left out.
+    **options
+        Of the bars.
     """
 
-    def __init__(self, *, quiet: bool = False, console: Console | None = None) -> None:
-        self._console = console or Console(stderr=True, quiet=quiet, highlight=False)
+    def __init__(self, count: str, *, quiet: bool, console: Console | None, **options: Any) -> None:
+        self._console = console or Stderr(stderr=True, quiet=quiet, highlight=False)
         self._bars = Bars(
             TextColumn("{task.description}"),
             BarColumn(bar_width=20),
-            TextColumn("generation {task.completed:.0f} of {task.total:.0f}"),
+            TextColumn(count),
             TextColumn("{task.fields[found]}"),
             TimeRemainingColumn(compact=True),
             console=self._console,
             disable=quiet or not self._console.is_terminal,
             transient=True,
-            auto_refresh=False,
+            **options,
         )
-        self._drawn = -math.inf
 
     def __enter__(self) -> Self:
         self._bars.start()
@@ -70,6 +84,19 @@ class Progress:
     def say(self, message: str) -> None:
         """Write a message on a line of its own."""
         self._console.print(message, markup=False, soft_wrap=True)
+
+
+class Progress(Display):
+    """What the user sees while a search runs; `quiet` and `console` as in `Display`."""
+
+    def __init__(self, *, quiet: bool = False, console: Console | None = None) -> None:
+        super().__init__(
+            "generation {task.completed:.0f} of {task.total:.0f}",
+            quiet=quiet,
+            console=console,
+            auto_refresh=False,
+        )
+        self._drawn = -math.inf
 
     @contextmanager
     def stage(self, name: str, generations: int) -> Iterator[Callable[[Referee], None]]:

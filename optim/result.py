@@ -18,6 +18,7 @@ from optim.search import Found
 from optim.space import DesignSpace
 from optim.tables import (
     DIMENSION_KEYS,
+    aligned,
     dimensions,
     figures,
     front_csv,
@@ -29,7 +30,7 @@ from optim.tables import (
 from optim.tolerance import Spread
 from optim.tolerance_table import spread_object, spread_rows, spread_words
 
-__all__ = ["Result", "aligned", "signed"]
+__all__ = ["Result", "signed"]
 
 MOST_TITLE: Final = 180
 """Letters of the title in a design file, which takes 200 with the role behind."""
@@ -236,18 +237,6 @@ class Result:
                 for limit, value in relaxation(relaxed, row, self.requirements)
             )
             yield f"Relax {words} and a design exists."
-
-
-def aligned(lines: list[list[str]]) -> list[str]:
-    """Return the lines of a table: first column to the left, the others to the right."""
-    widths = np.array([[len(cell) for cell in line] for line in lines]).max(axis=0)
-    return [
-        "  ".join(
-            cell.ljust(width) if column == 0 else cell.rjust(width)
-            for column, (cell, width) in enumerate(zip(line, widths, strict=True))
-        ).rstrip()
-        for line in lines
-    ]
 
 
 def signed(margin: float) -> str:

@@ -114,7 +114,6 @@ def run(spec: Path, options: Options, progress: Progress | None = None) -> Resul
     if (folder / FILE).exists() and not (folder / JOURNAL).exists():
         msg = f"{folder}: holds the results of a run without its journal; choose another with --out"
         raise JournalError(msg)
-    folder.mkdir(parents=True, exist_ok=True)
     settings = requirements.run
     jobs = options.jobs or cpu_count()
     try:

@@ -5,12 +5,12 @@ On a terminal the bars; piped, a line a finished run; quiet, nothing.
 
 from __future__ import annotations
 
-from types import TracebackType
-from typing import Final, Self
+from typing import Final
 
 from rich.console import Console
-from rich.progress import BarColumn, Progress, TaskID, TextColumn, TimeRemainingColumn
+from rich.progress import TaskID
 
+from optim.progress import Display
 from optim.study_slots import Done, Told
 
 __all__ = ["StudyProgress"]
@@ -19,54 +19,28 @@ MEMORY: Final = 1e6
 """Seconds over which the pace is taken; runs may take hours."""
 
 
-class StudyProgress:
-    """What the user sees while a study runs.
+class StudyProgress(Display):
+    """What the user sees while a study runs; `quiet` and `console` as in `Display`.
 
     Parameters
     ----------
     total, done : int
         Runs of the study, and those done before.
-    quiet : bool
-        Write nothing at all.
-    console : Console, optional
-        Where to write; stderr if left out.
     """
 
     def __init__(
         self, total: int, done: int, *, quiet: bool = False, console: Console | None = None
     ) -> None:
-        self._console = console or Console(stderr=True, quiet=quiet, highlight=False)
-        self._total, self._done = total, done
-        self._bars = Progress(
-            TextColumn("{task.description}"),
-            BarColumn(bar_width=20),
-            TextColumn("{task.completed:.0f} of {task.total:.0f}"),
-            TextColumn("{task.fields[found]}"),
-            TimeRemainingColumn(compact=True),
-            console=self._console,
-            disable=quiet or not self._console.is_terminal,
-            transient=True,
+        super().__init__(
+            "{task.completed:.0f} of {task.total:.0f}",
+            quiet=quiet,
+            console=console,
             refresh_per_second=2.0,
             speed_estimate_period=MEMORY,
         )
+        self._total, self._done = total, done
         self._all = self._bars.add_task("runs", total=total, completed=done, found="")
         self._tasks: dict[int, TaskID] = {}
-
-    def __enter__(self) -> Self:
-        self._bars.start()
-        return self
-
-    def __exit__(
-        self,
-        kind: type[BaseException] | None,
-        error: BaseException | None,
-        trace: TracebackType | None,
-    ) -> None:
-        self._bars.stop()
-
-    def say(self, message: str) -> None:
-        """Write a message on a line of its own."""
-        self._console.print(message, markup=False, soft_wrap=True)
 
     def told(self, event: Told) -> None:
         """Show how a run goes."""

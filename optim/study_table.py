@@ -12,10 +12,9 @@ import io
 from collections.abc import Mapping
 from typing import Final
 
-from optim.result import aligned
 from optim.study_file import Study
 from optim.study_folder import Outcome
-from optim.tables import DIMENSION_KEYS, FIGURES
+from optim.tables import DIMENSION_KEYS, FIGURES, aligned
 
 __all__ = ["study_csv", "study_text"]
 

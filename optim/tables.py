@@ -27,6 +27,7 @@ from optim.units import to_file
 __all__ = [
     "DIMENSION_KEYS",
     "FIGURES",
+    "aligned",
     "dimensions",
     "figures",
     "front_csv",
@@ -124,6 +125,18 @@ def front_csv(front: Judged, reflectors: Reflectors, requirements: Requirements,
 def summary_json(summary: Mapping[str, Any]) -> str:
     """Return summary.json: no NaN, no infinity, a newline at the end."""
     return json.dumps(_plain(summary), indent=2, ensure_ascii=False, allow_nan=False) + "\n"
+
+
+def aligned(lines: list[list[str]]) -> list[str]:
+    """Return the lines of a table: first column to the left, the others to the right."""
+    widths = np.array([[len(cell) for cell in line] for line in lines]).max(axis=0)
+    return [
+        "  ".join(
+            cell.ljust(width) if column == 0 else cell.rjust(width)
+            for column, (cell, width) in enumerate(zip(line, widths, strict=True))
+        ).rstrip()
+        for line in lines
+    ]
 
 
 def _cell(value: float, digits: int) -> str:

@@ -19,13 +19,13 @@ from optim.plot_band import draw_band
 from optim.plot_maps import draw_map, in_file_units
 from optim.plot_prices import draw_prices
 from optim.style import save
-from optim.tables import FIGURES
+from optim.tables import FIGURES, aligned
 from optim.trade import Trade
 from optim.trade_maps import Map
 from optim.trade_prices import STEPS, Price
 from optim.units import FILE_KEYS, VARIABLES, to_file
 
-__all__ = ["words", "write"]
+__all__ = ["page", "write"]
 
 UNITS: Final = {
     "frontal_area": "m²",
@@ -80,11 +80,11 @@ def write(folder: Path, found: Trade) -> list[str]:
     for name, lines in tables.items():
         with (folder / f"{name}.csv").open("w", encoding="utf-8", newline="") as stream:
             csv.writer(stream, lineterminator="\n").writerows(lines)
-    (folder / "trade.txt").write_text(words(found) + "\n", encoding="utf-8")
+    (folder / "trade.txt").write_text(page(found) + "\n", encoding="utf-8")
     return ["trade.txt", *(f"{n}.png" for n in pictures), *(f"{n}.csv" for n in tables)]
 
 
-def words(found: Trade) -> str:
+def page(found: Trade) -> str:
     """Return a page of plain text: what each requirement costs, and who judged."""
     return "\n".join(_words(found))
 
@@ -132,7 +132,7 @@ def _headline(known: Sequence[Price], size: str) -> Iterator[str]:
     )
 
 
-def _table(found: Sequence[Price], scale: float, unit: str) -> Iterator[str]:
+def _table(found: Sequence[Price], scale: float, unit: str) -> list[str]:
     lines = [
         ["requirement", "asked", "step", "eased", "half", "half harder", "harder", f"none, {unit}"]
     ]
@@ -146,11 +146,7 @@ def _table(found: Sequence[Price], scale: float, unit: str) -> Iterator[str]:
         ]
         for price in found
     ]
-    widths = [max(len(line[i]) for line in lines) for i in range(len(lines[0]))]
-    for line in lines:
-        cells = [line[0].ljust(widths[0])]
-        cells += [c.rjust(w) for c, w in zip(line[1:], widths[1:], strict=True)]
-        yield "  ".join(cells)
+    return aligned(lines)
 
 
 def _change(price: Price, steps: float) -> str:

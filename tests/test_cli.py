@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import json
+import os
 import subprocess
 import sys
 from pathlib import Path
@@ -292,17 +293,35 @@ def test_in_a_process_of_its_own_with_a_plain_terminal(spec: Path) -> None:
     assert run.stderr == b""
 
 
-def test_a_reader_that_has_seen_enough_is_no_fault(design: Path) -> None:
+@pytest.mark.parametrize("messages_too", [False, True])
+@pytest.mark.parametrize(
+    ("arguments", "code"),
+    [
+        (["analyse", "design.toml", "--model", "image", "--out", "out"], 0),
+        (["check", "spec.toml"], 1),
+        (["search", "spec.toml", "--out", "run", "--jobs", "1"], 1),
+        (["check", "none.toml"], 2),
+    ],
+)
+def test_a_reader_that_has_seen_enough_changes_nothing(
+    design: Path, spec: Path, arguments: list[str], code: int, messages_too: bool
+) -> None:
+    # No corner on the mast gives 40 dBi: physics says no, and so does a search.
+    few = "population = 4\ngenerations = 1\n[run]"
+    spec.write_text(SPEC.replace("10.5", "40").replace("[run]", f"[run]\n{few[:-6]}"))
     program = "import sys; from optim.cli import main; sys.exit(main())"
-    run = subprocess.Popen(
-        [sys.executable, "-c", program, "analyse", str(design), "--model", "image"],
-        stdout=subprocess.PIPE,
-        stderr=subprocess.PIPE,
+    ours, theirs = os.pipe()
+    os.close(ours)
+    run = subprocess.run(
+        [sys.executable, "-c", program, *arguments],
+        stdout=theirs,
+        stderr=theirs if messages_too else subprocess.PIPE,
+        check=False,
+        cwd=design.parent,
         env={"PYTHONPATH": str(Path(cli.__file__).parents[1])},
     )
-    assert run.stdout is not None
-    assert run.stderr is not None
-    run.stdout.close()
-    with run.stderr:
-        assert run.stderr.read() == b""
-    assert run.wait() == 0
+    os.close(theirs)
+    assert run.returncode == code
+    assert messages_too or b"Error" not in run.stderr
+    assert (design.parent / "out" / "drawing.svg").exists() == (arguments[0] == "analyse")
+    assert (design.parent / "run" / "report.html").exists() == (arguments[0] == "search")

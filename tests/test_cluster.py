@@ -225,7 +225,7 @@ def test_an_address_without_a_scheduler(
         told = capsys.readouterr().err
         assert f"cluster {address}: no scheduler answers there" in told
         assert "Traceback" not in told
-    assert not (tmp_path / "run" / JOURNAL).exists()
+    assert not (tmp_path / "run").exists()
 
 
 def test_without_the_extra(

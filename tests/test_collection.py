@@ -15,6 +15,7 @@ TESTED_ELSEWHERE = {
     "models/ray_sources.py": "the near fields behind the currents that test_ray.py checks",
     "models/ray_currents.py": "the currents whose radiation test_ray.py checks",
     "optim/analysis.py": "the object and table that test_cli.py reads",
+    "optim/analysis_files.py": "the files that test_cli.py looks at",
     "optim/checks.py": "what test_requirements.py and test_designfile.py refuse",
     "optim/datasheet_plots.py": "the pictures of the pages that test_datasheet.py checks",
     "optim/drafting.py": "the pen of the drawings that test_drawing.py checks",

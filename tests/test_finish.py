@@ -43,6 +43,22 @@ def test_the_command_makes_the_same_again(folder: Path, capsys: pytest.CaptureFi
     assert contents(folder) == before
 
 
+def test_an_interrupt_tells_how_to_go_on(
+    folder: Path, capsys: pytest.CaptureFixture[str], monkeypatch: pytest.MonkeyPatch
+) -> None:
+    def interrupted(_folder: Path) -> Path:
+        raise KeyboardInterrupt
+
+    monkeypatch.setattr("optim.finish.make_report", interrupted)
+    before = contents(folder)
+    assert main(["report", str(folder)]) == 130
+    (told,) = capsys.readouterr().err.splitlines()
+    assert told.startswith("interrupted; what the search found is saved. Go on with: apexfront")
+    monkeypatch.undo()
+    assert main(told.partition("apexfront ")[2].split()) == 0
+    assert contents(folder) == before
+
+
 def test_trade_results_in_the_folder_are_shown(folder: Path) -> None:
     (folder / "trade").mkdir()
     (folder / "trade" / "trade.txt").write_text("one more decibel <costs> area")

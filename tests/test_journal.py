@@ -176,8 +176,12 @@ def test_one_writer_at_a_time(tmp_path: Path) -> None:
 
 
 def test_unwritable_place_and_full_disk_are_told(tmp_path: Path) -> None:
-    with pytest.raises(JournalError, match=r"no_such_folder.*cannot be opened: No such file"):
-        Journal(tmp_path / "no_such_folder" / "journal.jsonl", HEADER, resume=False)
+    (tmp_path / "file").touch()
+    with pytest.raises(JournalError, match="file: cannot be made: File exists"):
+        Journal(tmp_path / "file" / "journal.jsonl", HEADER, resume=False)
+    (tmp_path / "folder" / "journal.jsonl").mkdir(parents=True)
+    with pytest.raises(JournalError, match=r"journal\.jsonl: cannot be opened: Is a directory"):
+        Journal(tmp_path / "folder" / "journal.jsonl", HEADER, resume=False)
     script = (
         "import resource, sys; from pathlib import Path; import numpy as np\n"
         "import signal; signal.signal(signal.SIGXFSZ, signal.SIG_IGN)\n"

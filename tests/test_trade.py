@@ -12,7 +12,7 @@ import pytest
 from optim.cli import main
 from optim.requirements import Goal, read_requirements
 from optim.trade import Options, known_designs, trade
-from optim.trade_files import words, write
+from optim.trade_files import page, write
 from tests.search_specs import EASY, IMPOSSIBLE
 from tests.search_specs import write as write_spec
 
@@ -57,7 +57,7 @@ def test_files_and_words(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> 
 def test_same_whatever_the_workers(tmp_path: Path) -> None:
     spec = write_spec(tmp_path, SPEC)
     one, two = (trade(spec, Options(jobs=jobs, quiet=True)) for jobs in (1, 2))
-    assert words(one) == words(two)
+    assert page(one) == page(two)
     assert np.array_equal(one.maps[0].violations, two.maps[0].violations)
 
 
@@ -65,7 +65,7 @@ def test_nothing_meets_the_requirements(tmp_path: Path) -> None:
     found = trade(write_spec(tmp_path, IMPOSSIBLE), Options(jobs=1, quiet=True))
     assert not found.met
     assert next(iter(found.shown)) == "nearest_1"
-    text = words(found)
+    text = page(found)
     assert "No design was found that meets everything" in text
     assert "eased to" in text or "Without" in text
     assert "prices.png" in write(tmp_path / "out", found)
