@@ -23,7 +23,7 @@ from models.geometry import Reflectors
 from models.moment_field import Sky, View, plates_far_field
 from models.moment_kernel import near_reach
 from models.moment_plates import Grid, grid_cells
-from models.moment_wire import Wire, driven_shapes, sinusoidal_shape
+from models.moment_wire import Wire, driven_shapes, gap_share, rod, sinusoidal_shape
 from models.pattern import CUT_ANGLES, Pattern
 
 __all__ = ["DENSITIES", "ENOUGH_DB", "Answer", "Case", "Feed", "answers", "doubt", "radiate"]
@@ -42,9 +42,6 @@ ENOUGH_DB: Final = 0.05
 
 VOUCHED_DB: Final = 0.3
 """Doubt above which, after the finest grids, the model does not vouch for its answer."""
-
-MODES: Final = 5
-"""Currents on half the dipole."""
 
 BATCH_NUMBERS: Final = 200_000
 """Complex numbers in the matrices of one batch: what a processor's cache holds."""
@@ -195,21 +192,33 @@ def answers(case: Case, key: list[int], feed: Feed, sky: Sky) -> tuple[Answer, A
     sky : Sky
     """
     base_s, base_z, reach, _ = key
-    wire = Wire(modes=MODES, k=case.k, length=case.dipole_length, radius=case.dipole_radius)
-    modes = wire.impedance()
-    shapes = driven_shapes(wire, modes) if feed == "solved" else sinusoidal_shape(wire)
-    alone = _alone(case, wire, shapes, modes, sky)
+    wire, shapes, gap, own = _dipole(case, feed)
+    alone = _alone(case, wire, shapes, own, sky)
     view = View.of(sky, case.apex_angle)
     grids = [
         _respond(case, wire, shapes, view, (f * base_s, f * base_z), reach) for f in PROPORTION
     ]
     return (
-        _drive(shapes, alone, _limit(grids, (0, 2, 4))),
-        _drive(shapes, alone, _limit(grids[1:], (0, 2))),
+        _drive(gap, alone, _limit(grids, (0, 2, 4))),
+        _drive(gap, alone, _limit(grids[1:], (0, 2))),
     )
 
 
-def _alone(case: Case, wire: Wire, shapes: ComplexArray, modes: ComplexArray, sky: Sky) -> Response:
+def _dipole(case: Case, feed: Feed) -> tuple[Wire, ComplexArray, ComplexArray, ComplexArray]:
+    """Return the wire, its shapes, their currents at the gap and their impedances alone."""
+    if feed == "solved":
+        wire = rod(k=case.k, length=case.dipole_length, radius=case.dipole_radius)
+        modes = wire.impedance()
+        shapes = driven_shapes(wire, modes)
+        gap = (gap_share(wire)[:, None] @ shapes)[:, 0]
+    else:
+        wire = Wire(k=case.k, length=case.dipole_length, radius=case.dipole_radius)
+        modes, shapes = wire.impedance(), sinusoidal_shape(wire)
+        gap = shapes[:, 0]
+    return wire, shapes, gap, np.asarray(shapes.swapaxes(1, 2) @ modes @ shapes)
+
+
+def _alone(case: Case, wire: Wire, shapes: ComplexArray, own: ComplexArray, sky: Sky) -> Response:
     """Return fields, impedance and squared current of the dipole in free space."""
     theta, phi = sky.theta, sky.phi
     path = (case.k * case.spacing)[:, None] * (np.sin(theta) * np.cos(phi))
@@ -217,7 +226,7 @@ def _alone(case: Case, wire: Wire, shapes: ComplexArray, modes: ComplexArray, sk
     return Response(
         theta=wire.far_field(shapes, np.cos(theta)).swapaxes(1, 2) * np.exp(1j * path)[:, None],
         phi=np.zeros(1, dtype=np.complex128),
-        impedance=np.asarray(shapes.swapaxes(1, 2) @ modes @ shapes, dtype=np.complex128),
+        impedance=own,
         square=rod / (2.0 * np.pi * case.dipole_radius[:, None, None]),
     )
 
@@ -285,9 +294,8 @@ class Answer:
     square: FloatArray
 
 
-def _drive(shapes: ComplexArray, alone: Response, plates: Response) -> Answer:
+def _drive(gap: ComplexArray, alone: Response, plates: Response) -> Answer:
     """Return dipole and plates with the wire's shapes in the shares that 1 A at the gap asks."""
-    gap = shapes[:, 0]
     total = alone.impedance + plates.impedance
     shares = np.linalg.solve(total, gap[..., None])
     impedance = 1.0 / (gap[:, None] @ shares)

@@ -98,6 +98,7 @@ def test_corners_with_resonant_dipoles() -> None:
     figures = evaluate(designs, C0, model="moment")
     assert figures.directivity_dbi[:, 0] == pytest.approx([11.42, 11.37, 11.28], abs=0.5)
     assert figures.resistance_ohm[:, 0] == pytest.approx([50.0, 70.0, 100.0], abs=5.0)
+    assert figures.reactance_ohm[:, 0] == pytest.approx(0.0, abs=5.0)  # resonant
     assert figures.beamwidth_e_deg[:, 0] == pytest.approx(46.0, abs=4.0)
     assert figures.beamwidth_h_deg[:, 0] == pytest.approx(54.0, abs=4.0)
     large = corners(90.0, spacing=0.323, plate_width=1.6, plate_length=1.6)
