@@ -208,6 +208,9 @@ def _excess(
     part = checked / step - left
     finite = np.maximum(level_db, FAR_BELOW)  # a null times no part of it would be no number
     level = finite[..., left] * (1.0 - part) + finite[..., left + 1] * part
+    # One null is a null; a stretch of nothing is where the model has no answer.
+    nothing = np.isneginf(level_db)
+    level[nothing[..., left] & nothing[..., left + 1]] = np.nan
     # Levels are relative to boresight: where 0 dB is allowed, keeping it is no close call.
     kept = (allowed >= 0.0) & (level <= allowed + 1e-9)
     return np.asarray(np.where(kept, WELL_INSIDE, level - allowed).max(axis=-1))

@@ -19,26 +19,11 @@ from models.images import image_count
 from models.pattern import Pattern
 from optim.designfile import Design
 from optim.margins import GREATEST_DIP_DB
+from optim.quantities import FIGURES
 from optim.requirements import DEFAULT_RESISTANCE_OHM
 from optim.tables import aligned
 
-__all__ = ["FIGURES", "Analysis", "analyse", "as_json", "words"]
-
-FIGURES: Final = {
-    "directivity_dbi": ("directivity", "dBi", 2),
-    "gain_dbi": ("gain", "dBi", 2),
-    "realized_gain_dbi": ("realized gain", "dBi", 2),
-    "beamwidth_h_deg": ("half-power beamwidth, H-plane", "°", 1),
-    "beamwidth_e_deg": ("half-power beamwidth, E-plane", "°", 1),
-    "front_to_back_db": ("front-to-back ratio, rear sector", "dB", 1),
-    "front_to_back_180_db": ("front-to-back ratio at 180°", "dB", 1),
-    "sidelobe_db": ("highest side lobe", "dB", 1),
-    "boresight_dip_db": ("beam peak above boresight", "dB", 2),
-    "resistance_ohm": ("input resistance", "Ω", 1),
-    "reactance_ohm": ("input reactance", "Ω", 1),
-    "vswr": ("VSWR", "", 2),
-}
-"""Figures in the order of the output: what each is called, its unit, its decimals."""
+__all__ = ["Analysis", "analyse", "as_json", "words"]
 
 SMALL_PLATE: Final = 0.6
 """Plates narrower or shorter than this many wavelengths are small to a ray."""
@@ -117,7 +102,7 @@ def _rows(analysis: Analysis) -> Iterator[list[str]]:
     count = analysis.frequencies.size
     shown = np.unique(np.linspace(0, count - 1, min(count, MOST_COLUMNS)).round().astype(int))
     yield ["MHz", *(f"{analysis.frequencies[place] / 1e6:g}" for place in shown)]
-    for name, (label, unit, decimals) in FIGURES.items():
+    for name, (label, unit, decimals, _) in FIGURES.items():
         values = getattr(analysis.figures, name)[0][shown]
         cells = [f"{v:.{decimals}f}" if np.isfinite(v) else "–" for v in values]
         yield [f"{label}, {unit}" if unit else label, *cells]

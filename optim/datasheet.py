@@ -18,9 +18,9 @@ from matplotlib.projections.polar import PolarAxes
 
 from models import MODELS, Build
 from optim import datasheet_plots
-from optim.analysis import FIGURES
 from optim.cautions import cautions
 from optim.drafting import Sheet
+from optim.quantities import FIGURES, MASKS, SIZES, minus, number
 from optim.style import INCH, house_style, plain
 from optim.subject import Subject
 from optim.tables import DIMENSION_KEYS
@@ -43,18 +43,7 @@ _CHARACTERS: Final = 112
 _COLUMNS: Final = (100.0, 122.0, 160.0, _RIGHT)
 """Right ends of the columns of numbers: least, most, asked, margin, mm."""
 
-_SIZES: Final = {
-    "width": ("box width", "mm", 1),
-    "height": ("box height", "mm", 1),
-    "depth": ("box depth", "mm", 1),
-    "frontal_area": ("frontal area", "m²", 4),
-    "mass": ("mass, plates and solid dipole", "kg", 2),
-    "wind_load": ("wind load", "N", 0),
-}
-_MASKS: Final = {
-    "mask_h_db": ("excess over the H-plane envelope", "dB", 2),
-    "mask_e_db": ("excess over the E-plane envelope", "dB", 2),
-}
+_SIZES: Final = ("width", "height", "depth", "frontal_area", "mass", "wind_load")
 
 
 def data_sheet(subject: Subject) -> bytes:
@@ -148,24 +137,29 @@ def _figures(sheet: Sheet, subject: Subject, y: float) -> float:
     y -= 5.4
     found: dict[str, list[tuple[str, float]]] = {}
     for limit, margin in subject.asked():
-        words = "inside" if limit.figure in _MASKS else f"{_SENSE[limit.sense]} {limit.value:g}"
+        words = "inside" if limit.figure in MASKS else f"{_SENSE[limit.sense]} {limit.value:g}"
         found.setdefault(limit.figure, []).append((words, margin))
-    masks = {name: row for name, row in _MASKS.items() if name in found}
-    for name, (words, unit, decimals) in (FIGURES | masks).items():
+    masks = {name: about for name, about in MASKS.items() if name in found}
+    for name, (words, unit, decimals, _) in (FIGURES | masks).items():
         values = getattr(subject.figures, name)[0]
-        ends = [_number(end, decimals) for end in (values.min(), values.max())]
+        ends = [number(end, decimals) for end in (values.min(), values.max())]
         y = _line(sheet, y, (words, unit), ends, found.get(name, []), decimals)
     sizes = subject.sizes()
-    for name, (words, unit, decimals) in _SIZES.items():
-        wind = f" at {subject.requirements.wind_speed:g} m/s" if name == "wind_load" else ""
-        one = ["", _number(sizes[name], decimals)]
-        y = _line(sheet, y, (words + wind, unit), one, found.get(name, []), decimals)
+    more = {
+        "mass": ", plates and solid dipole",
+        "wind_load": f" at {subject.requirements.wind_speed:g} m/s",
+    }
+    for name in _SIZES:
+        words, unit, decimals, _ = SIZES[name]
+        words += more.get(name, "")
+        one = ["", number(sizes[name], decimals)]
+        y = _line(sheet, y, (words, unit), one, found.get(name, []), decimals)
     if subject.yields is not None:
         expected, low, high = subject.yields
         least = subject.requirements.min_yield
         wanted = [] if least is None else [(f"at least {least:g}", expected - least)]
         words = f"yield within tolerances ({low:.3f} to {high:.3f})"
-        y = _line(sheet, y, (words, ""), ["", _number(expected, 3)], wanted, 3)
+        y = _line(sheet, y, (words, ""), ["", number(expected, 3)], wanted, 3)
     return y
 
 
@@ -189,15 +183,11 @@ def _line(
     for row, (limit, margin) in enumerate(asked):
         low = y - _ROW * row
         sheet.text((_COLUMNS[2], low), limit, align="right")
-        signed = f"{margin:+.{max(decimals, 1)}f}".replace("-", "−")
+        signed = minus(f"{margin:+.{max(decimals, 1)}f}")
         short = "" if margin >= 0.0 else "missed "
         told = f"{short}{signed}" if np.isfinite(margin) else "not known"
         sheet.text((_COLUMNS[3], low), told, align="right", bold=not margin >= 0.0)
     return y - _ROW * max(len(asked), 1)
-
-
-def _number(value: float, decimals: int) -> str:
-    return f"{value:.{decimals}f}".replace("-", "−") if np.isfinite(value) else "–"
 
 
 def _build(sheet: Sheet, subject: Subject, y: float) -> float:
@@ -268,8 +258,8 @@ def _said(subject: Subject, column: int) -> str:
     gain = f.gain_dbi if np.isfinite(f.gain_dbi[0, column]) else f.directivity_dbi
     kind = "gain" if gain is f.gain_dbi else "directivity"
     return (
-        f"{subject.frequencies[column] / 1e6:.6g} MHz: {kind} {_number(gain[0, column], 2)} dBi, "
-        f"beamwidth H {_number(f.beamwidth_h_deg[0, column], 1)}° "
-        f"E {_number(f.beamwidth_e_deg[0, column], 1)}°, "
-        f"front-to-back {_number(f.front_to_back_db[0, column], 1)} dB"
+        f"{subject.frequencies[column] / 1e6:.6g} MHz: {kind} {number(gain[0, column], 2)} dBi, "
+        f"beamwidth H {number(f.beamwidth_h_deg[0, column], 1)}° "
+        f"E {number(f.beamwidth_e_deg[0, column], 1)}°, "
+        f"front-to-back {number(f.front_to_back_db[0, column], 1)} dB"
     )

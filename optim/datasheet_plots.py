@@ -13,6 +13,7 @@ from matplotlib.projections.polar import PolarAxes
 
 from models.conventions import FloatArray
 from optim.plot_cuts import FLOOR_DB, relative_level_db
+from optim.quantities import minus
 from optim.style import GREY, MARKS, no_data, rule_out
 
 if TYPE_CHECKING:
@@ -42,7 +43,7 @@ def cut(axes: PolarAxes, subject: Subject, plane: str) -> None:
     axes.set_rlim(FLOOR_DB, top)
     rings = np.arange(FLOOR_DB + 10.0, top + 0.1, 10.0)
     axes.set_rgrids(
-        rings, [f"{r:.0f}".replace("-", "−") for r in rings], angle=165.0, fontsize=8.0, color=GREY
+        rings, [minus(f"{r:.0f}") for r in rings], angle=165.0, fontsize=8.0, color=GREY
     )
     turn = np.arange(0, 360, 30)
     axes.set_thetagrids(turn, [f"{min(t, 360 - t)}°" for t in turn], fontsize=8.0)

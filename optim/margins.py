@@ -16,7 +16,7 @@ from models.build import mass, wind_load
 from models.conventions import FloatArray
 from optim.requirements import Goal, Limit, Requirements
 
-__all__ = ["GUARDS", "SIZES", "Judge"]
+__all__ = ["GOAL_FIGURES", "GUARDS", "MISSING", "SIZES", "Judge"]
 
 MISSING: Final = 1000.0
 """A figure that is missing or infinite counts as this many scales beyond its limit."""
@@ -48,7 +48,7 @@ SIZES: Final = {
 }
 """Sizes and the unit of their caps in SI: mm for lengths, then m², m³, kg and N."""
 
-_GOAL_FIGURES: Final = {
+GOAL_FIGURES: Final = {
     "gain": "gain_dbi",
     "realized_gain": "realized_gain_dbi",
     "front_to_back": "front_to_back_db",
@@ -204,6 +204,6 @@ def _objective(goal: Goal, sizes: dict[str, FloatArray], figures: Figures) -> Fl
     if goal.name in sizes:
         values = sizes[goal.name][:, None]
     else:
-        values = getattr(figures, _GOAL_FIGURES[goal.name])
+        values = getattr(figures, GOAL_FIGURES[goal.name])
     worst = (values if goal.sense == "min" else -values).max(axis=1)
     return np.asarray(np.nan_to_num(worst, nan=MISSING, posinf=MISSING, neginf=-MISSING))

@@ -15,6 +15,7 @@ from matplotlib.figure import Figure
 
 from models.conventions import FloatArray
 from models.figures import Figures
+from optim.quantities import FIGURES, MASKS
 from optim.style import house_style, mark_of, new_figure, no_data, rule_out
 
 if TYPE_CHECKING:
@@ -23,16 +24,19 @@ if TYPE_CHECKING:
 __all__ = ["PANELS", "Bound", "draw_band"]
 
 PANELS: Final = {
-    "gain_dbi": "gain (dBi)",
-    "realized_gain_dbi": "realized gain (dBi)",
-    "beamwidth_h_deg": "H-plane beamwidth (degrees)",
-    "beamwidth_e_deg": "E-plane beamwidth (degrees)",
-    "front_to_back_db": "front-to-back ratio (dB)",
-    "sidelobe_db": "side lobe level (dB)",
-    "mask_h_db": "H-plane over envelope (dB)",
-    "mask_e_db": "E-plane over envelope (dB)",
-    "resistance_ohm": "input resistance (Ω)",
-    "vswr": "VSWR",
+    name: (FIGURES | MASKS)[name].label.replace("(°)", "(degrees)")
+    for name in (
+        "gain_dbi",
+        "realized_gain_dbi",
+        "beamwidth_h_deg",
+        "beamwidth_e_deg",
+        "front_to_back_db",
+        "sidelobe_db",
+        "mask_h_db",
+        "mask_e_db",
+        "resistance_ohm",
+        "vswr",
+    )
 }
 """What is shown, in this order, and its axis."""
 

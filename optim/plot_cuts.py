@@ -18,6 +18,7 @@ from matplotlib.projections.polar import PolarAxes
 from models.conventions import FloatArray, decibels
 from models.figures import Figures, Terms, figures_of_merit
 from models.pattern import Pattern
+from optim.quantities import minus
 from optim.style import BLACK, FORBIDDEN, GREY, MARKS, Mark, house_style, new_figure, no_data
 
 if TYPE_CHECKING:
@@ -137,9 +138,7 @@ def _prepare_polar(axes: PolarAxes, name: str, top: float) -> None:
     axes.set_rlim(FLOOR_DB, top)
     rings = np.arange(FLOOR_DB + 10.0, top, 10.0)
     # Ring labels stand towards the rear, where the pattern is small, off the radial lines.
-    axes.set_rgrids(
-        rings, [f"{ring:.0f}".replace("-", "−") for ring in rings], angle=165.0, fontsize=8.0
-    )
+    axes.set_rgrids(rings, [minus(f"{ring:.0f}") for ring in rings], angle=165.0, fontsize=8.0)
     for label in axes.get_yticklabels():
         label.set(color=GREY, backgroundcolor=(1.0, 1.0, 1.0, 0.7))
     turn = np.arange(0, 360, 30)

@@ -14,6 +14,7 @@ from matplotlib.figure import Figure
 from matplotlib.font_manager import FontProperties
 
 from optim.plot_band import PANELS
+from optim.quantities import SIZES
 from optim.requirements import Limit
 from optim.style import BLACK, GREY, MARKS, TYPE, house_style, new_figure, no_data, plain
 from optim.trade_prices import Price
@@ -24,7 +25,6 @@ if TYPE_CHECKING:
 __all__ = ["draw_prices", "words_of"]
 
 _COLUMNS: Final = 3
-_UNITS: Final = {"mm": "mm", "m2": "m²", "kg": "kg", "n": "N"}
 MOST_PANELS: Final = 9
 
 
@@ -116,6 +116,5 @@ def words_of(limit: Limit) -> str:
     if limit.figure in PANELS:
         what = PANELS[limit.figure].replace("degrees", "°").replace("ratio ", "")
     else:
-        name, _, unit = limit.key.rpartition("_")
-        what = f"{name.replace('_', ' ')} ({_UNITS[unit]})"
+        what = f"{limit.figure.replace('_', ' ')} ({SIZES[limit.figure].unit})"
     return f"{what} at {'least' if limit.sense == 'min' else 'most'}"

@@ -7,7 +7,7 @@ size across, a figure upwards, a third goal by colour. Values are the worst over
 from __future__ import annotations
 
 from pathlib import Path
-from typing import TYPE_CHECKING, Final, NamedTuple
+from typing import TYPE_CHECKING, Final
 
 import numpy as np
 from matplotlib.figure import Figure
@@ -16,10 +16,12 @@ from models import Figures, radiate
 from models.conventions import FloatArray
 from models.figures import figures_of_merit
 from optim.drawing import draw_sketches
-from optim.margins import MISSING, SIZES
+from optim.margins import GOAL_FIGURES, MISSING, SIZES
 from optim.plot_band import draw_band
 from optim.plot_cuts import draw_cuts
 from optim.plot_front import Axis, draw_front
+from optim.quantities import FIGURES, YIELD
+from optim.quantities import SIZES as ABOUT_SIZES
 from optim.style import save
 
 if TYPE_CHECKING:
@@ -30,36 +32,6 @@ if TYPE_CHECKING:
 __all__ = ["FOLDER", "draw_run", "front_of"]
 
 FOLDER: Final = "pictures"
-
-
-class _Quantity(NamedTuple):
-    """A goal as an axis: the figure or size that a limit on it names, its words and its unit."""
-
-    figure: str
-    words: str
-    unit: str
-
-    @property
-    def label(self) -> str:
-        words = self.words if self.figure in SIZES else f"{self.words}, worst in the band"
-        return f"{words} ({self.unit})" if self.unit else words
-
-
-_QUANTITIES: Final = {
-    "frontal_area": _Quantity("frontal_area", "frontal area", "m²"),
-    "volume": _Quantity("volume", "volume of the box", "m³"),
-    "longest_side": _Quantity("longest_side", "longest side of the box", "mm"),
-    "sheet_area": _Quantity("sheet_area", "sheet area", "m²"),
-    "mass": _Quantity("mass", "mass", "kg"),
-    "wind_load": _Quantity("wind_load", "wind load", "N"),
-    "gain": _Quantity("gain_dbi", "gain", "dBi"),
-    "realized_gain": _Quantity("realized_gain_dbi", "realized gain", "dBi"),
-    "front_to_back": _Quantity("front_to_back_db", "front-to-back ratio", "dB"),
-    "beamwidth_h": _Quantity("beamwidth_h_deg", "H-plane beamwidth", "°"),
-    "beamwidth_e": _Quantity("beamwidth_e_deg", "E-plane beamwidth", "°"),
-    "vswr": _Quantity("vswr", "VSWR", ""),
-    "yield": _Quantity("yield", "yield", ""),
-}
 
 
 def draw_run(folder: Path, result: Result) -> list[Path]:
@@ -140,13 +112,13 @@ def _axes_of(goals: list[str]) -> tuple[str, str, str | None]:
 
 
 def _axis(name: str, result: Result, judged: Judged) -> Axis:
-    requirements, quantity = result.requirements, _QUANTITIES[name]
-    limits = {
-        limit.sense: limit.value for limit in requirements.limits if limit.figure == quantity.figure
-    }
+    requirements, figure = result.requirements, GOAL_FIGURES.get(name, name)
+    about = (FIGURES | ABOUT_SIZES | {"yield": YIELD})[figure]
+    worst = "" if name in SIZES else ", worst in the band"
+    limits = {limit.sense: limit.value for limit in requirements.limits if limit.figure == figure}
     return Axis(
-        label=quantity.label,
-        unit=quantity.unit,
+        label=about._replace(short=f"{about.short or about.words}{worst}").label,
+        unit=about.unit,
         values=_values(name, result, judged, requirements),
         minimum=limits.get("min"),
         maximum=limits.get("max"),
@@ -164,4 +136,4 @@ def _values(name: str, result: Result, judged: Judged, requirements: Requirement
         return np.asarray(
             getattr(result.space.reflectors(judged.designs), name) / SIZES[name], dtype=np.float64
         )
-    return np.asarray(judged.worst[:, Figures.names().index(_QUANTITIES[name].figure)])
+    return np.asarray(judged.worst[:, Figures.names().index(GOAL_FIGURES[name])])

@@ -17,6 +17,7 @@ from optim.margins import MISSING
 from optim.requirements import Goal, Limit
 
 __all__ = [
+    "MOST_NEAREST",
     "MOST_ROWS",
     "binding_limits",
     "front_rows",
@@ -31,6 +32,7 @@ MOST_ROWS: Final = 100
 """Designs kept of a front."""
 
 MOST_NEAREST: Final = 3
+"""Designs shown where none meets everything."""
 
 BINDING: Final = 0.1
 """A limit met by less than this share of a step of margin binds."""
@@ -126,7 +128,7 @@ def relaxed_value(limit: Limit, margin: float) -> float:
 
     Three significant digits, rounded to the easy side.
     """
-    value = limit.value + margin if limit.sense == "min" else limit.value - margin
+    value = limit.at(margin)
     if value == 0.0:
         return value
     digits = 2 - int(np.floor(np.log10(abs(value))))

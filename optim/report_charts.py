@@ -17,6 +17,7 @@ import numpy as np
 import vl_convert
 
 from optim.history import Course
+from optim.quantities import minus
 from optim.style import BLACK, GREY, MARKS
 
 __all__ = [
@@ -305,7 +306,7 @@ def _web() -> dict[str, Rows]:
         "spokes": [place(turn, 1.0, x2=0.0, y2=0.0) for turn in range(0, 360, 30)],
         "degrees": [place(t, 1.09, words=f"{min(t, 360 - t)}°") for t in range(0, 360, 30)],
         "levels": [
-            place(180.0, radius, words=f"{level:.0f}".replace("-", "−"))
+            place(180.0, radius, words=minus(f"{level:.0f}"))
             for level, radius in radii.items()
             if level < 0.0
         ],

@@ -23,6 +23,7 @@ from models.pattern import Pattern
 from optim.faults import Fault, SpecError
 from optim.margins import Judge
 from optim.outcome import FILE as FOUND
+from optim.quantities import FIGURES
 from optim.requirements import Band
 from optim.result import Result
 
@@ -44,19 +45,19 @@ FLOOR_DB: Final = -60.0
 MOST_POINTS: Final = 5
 """Frequencies of the band curves."""
 
-BAND_FIGURES: Final = {
-    "gain_dbi": 2,
-    "directivity_dbi": 2,
-    "realized_gain_dbi": 2,
-    "beamwidth_h_deg": 1,
-    "beamwidth_e_deg": 1,
-    "front_to_back_db": 1,
-    "sidelobe_db": 1,
-    "resistance_ohm": 1,
-    "reactance_ohm": 1,
-    "vswr": 2,
-}
-"""Figures that have a curve, and their decimals."""
+BAND_FIGURES: Final = (
+    "gain_dbi",
+    "directivity_dbi",
+    "realized_gain_dbi",
+    "beamwidth_h_deg",
+    "beamwidth_e_deg",
+    "front_to_back_db",
+    "sidelobe_db",
+    "resistance_ohm",
+    "reactance_ohm",
+    "vswr",
+)
+"""Figures that have a curve."""
 
 
 def compute(result: Result, jobs: int = 1) -> dict[str, Any]:
@@ -91,13 +92,13 @@ def compute(result: Result, jobs: int = 1) -> dict[str, Any]:
     if figures:
         merged = Figures.concatenate(figures)
         content["band"] = {
-            name: _rounded(getattr(merged, name), digits) for name, digits in BAND_FIGURES.items()
+            name: _rounded(getattr(merged, name), FIGURES[name].decimals) for name in BAND_FIGURES
         }
     if scouted:
         merged = Figures.concatenate([figures_of_merit(pattern, terms) for pattern in scouted])
         worst = Judge(requirements).worst(merged)
         content["scout"] = {
-            name: _rounded(worst[name], digits + 1) for name, digits in BAND_FIGURES.items()
+            name: _rounded(worst[name], FIGURES[name].decimals + 1) for name in BAND_FIGURES
         }
     return content
 

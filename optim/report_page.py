@@ -12,21 +12,13 @@ from typing import Any, Final
 import numpy as np
 
 from models import MODELS
-from optim.analysis import FIGURES
 from optim.cautions import cautions
 from optim.history import Course
 from optim.margins import MISSING
 from optim.overview import understood
+from optim.quantities import FIGURES, MASKS, SIZES, minus
 from optim.report_data import BAND_FIGURES
-from optim.report_quantities import (
-    MASKS,
-    SIZE_WORDS,
-    Quantity,
-    asked_words,
-    limit_words,
-    minus,
-    quantities,
-)
+from optim.report_quantities import Quantity, asked_words, limit_words, quantities
 from optim.requirements import Limit
 from optim.result import Result, signed
 from optim.style import mark_of
@@ -189,9 +181,10 @@ def compared(
 
 def _cell(limit: Limit, margin: float) -> dict[str, Any]:
     known = abs(margin) < MISSING * limit.scale
-    value = limit.value + (margin if limit.sense == "min" else -margin)
-    decimals = (FIGURES | SIZE_WORDS).get(limit.figure, ("", "", 2))[2]
-    reached = f"{-margin:+.2f} dB" if limit.figure in MASKS else f"{value:.{decimals}f}"
+    about = (FIGURES | MASKS | SIZES)[limit.figure]
+    reached = (
+        f"{-margin:+.2f} dB" if limit.figure in MASKS else f"{limit.at(margin):.{about.decimals}f}"
+    )
     return {
         "reached": minus(reached) if known else "–",
         "margin": minus(signed(margin)) if known else "",

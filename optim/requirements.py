@@ -116,6 +116,14 @@ class Limit:
             return 0.05 * abs(self.value) or 1.0
         return 1.0
 
+    def margins(self, values: FloatArray) -> FloatArray:
+        """Return how far `values` are inside, in the key's unit; below 0 is outside."""
+        return values - self.value if self.sense == "min" else self.value - values
+
+    def at(self, margin: float) -> float:
+        """Return the value whose margin is `margin`."""
+        return self.value + margin if self.sense == "min" else self.value - margin
+
 
 @dataclass(frozen=True)
 class Goal:

@@ -209,9 +209,8 @@ class Result:
             lines.append([key, "", *(f"{values[row]:.4g}" for row in rows.values())])
         for column, limit in enumerate(self.requirements.limits):
             asked = "envelope" if limit.key.startswith("mask") else f"{limit.sense} {limit.value:g}"
-            sign = 1.0 if limit.sense == "min" else -1.0
             found = judged.margins[list(rows.values()), column]
-            cells = [f"{limit.value + sign * m:.4g} ({signed(m)})" for m in found]
+            cells = [f"{limit.at(m):.4g} ({signed(m)})" for m in found]
             lines.append([limit.key, asked, *cells])
         for goal_column, goal in enumerate(self.requirements.goals):
             sign = 1.0 if goal.sense == "min" else -1.0

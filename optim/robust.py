@@ -14,7 +14,7 @@ import numpy as np
 
 from models.conventions import FloatArray
 from optim.archive import Judged, diverse
-from optim.recommend import front_rows, roles, sorted_rows
+from optim.recommend import MOST_NEAREST, front_rows, roles, sorted_rows
 from optim.requirements import Goal, Requirements
 from optim.space import DesignSpace
 from optim.tolerance import Builds, Spread
@@ -24,8 +24,6 @@ __all__ = ["bred", "decide", "reach", "tolerated"]
 YIELD: Final = "yield"
 MOST_STUDIED: Final = 96
 """Designs of a front whose yield is found."""
-
-MOST_NEAREST: Final = 3
 
 
 def tolerated(requirements: Requirements) -> bool:

@@ -12,9 +12,10 @@ import io
 from collections.abc import Mapping
 from typing import Final
 
+from optim.quantities import FIGURES
 from optim.study_file import Study
 from optim.study_folder import Outcome
-from optim.tables import DIMENSION_KEYS, FIGURES, aligned
+from optim.tables import DIMENSION_KEYS, aligned
 
 __all__ = ["study_csv", "study_text"]
 

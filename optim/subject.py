@@ -4,7 +4,6 @@ from __future__ import annotations
 
 from dataclasses import dataclass, replace
 from functools import cached_property
-from typing import Final
 
 import numpy as np
 
@@ -13,11 +12,10 @@ from models.conventions import FloatArray, decibels
 from models.figures import figures_of_merit
 from models.pattern import Pattern
 from optim.margins import SIZES, Judge
+from optim.quantities import OF_A_MATCH
 from optim.requirements import Limit, Requirements
 
 __all__ = ["Subject"]
-
-_MATCH: Final = ("realized_gain_dbi", "reactance_ohm", "vswr")
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)
@@ -57,7 +55,7 @@ class Subject:
         figures = figures_of_merit(self.pattern, self.requirements.terms)
         if MODELS[self.model].gives_match:
             return figures
-        return replace(figures, **dict.fromkeys(_MATCH, np.full(figures.vswr.shape, np.nan)))
+        return replace(figures, **dict.fromkeys(OF_A_MATCH, np.full(figures.vswr.shape, np.nan)))
 
     @property
     def name(self) -> str:
@@ -86,6 +84,9 @@ class Subject:
             values = np.array([sizes[limit.figure]])
         else:
             values = getattr(self.figures, limit.figure)[0]
-        worst = (values - limit.value if limit.sense == "min" else limit.value - values).min()
         # Exactly on the limit is met, whatever the last bits say.
-        return float(np.round(worst, 9)) if np.isfinite(values).all() else float("nan")
+        return (
+            float(np.round(limit.margins(values).min(), 9))
+            if np.isfinite(values).all()
+            else float("nan")
+        )

@@ -20,13 +20,13 @@ from models.build import mass
 from models.conventions import FloatArray
 from models.geometry import DIMENSIONS
 from optim.archive import Judged
+from optim.quantities import FIGURES
 from optim.recommend import relaxed_value
 from optim.requirements import Limit, Requirements
 from optim.units import to_file
 
 __all__ = [
     "DIMENSION_KEYS",
-    "FIGURES",
     "aligned",
     "dimensions",
     "figures",
@@ -41,29 +41,16 @@ DIMENSION_KEYS: Final = {
     name: f"{name}_deg" if name == "apex_angle" else f"{name}_mm" for name in DIMENSIONS
 }
 
-FIGURES: Final = {
-    "directivity_dbi": 3,
-    "gain_dbi": 3,
-    "realized_gain_dbi": 3,
-    "beamwidth_h_deg": 2,
-    "beamwidth_e_deg": 2,
-    "front_to_back_db": 3,
-    "front_to_back_180_db": 3,
-    "sidelobe_db": 3,
-    "boresight_dip_db": 3,
-    "resistance_ohm": 2,
-    "reactance_ohm": 2,
-    "vswr": 3,
+_SIZE_UNITS: Final = {
+    "width_mm": "mm",
+    "height_mm": "mm",
+    "depth_mm": "mm",
+    "frontal_area_m2": "m²",
+    "mass_kg": "kg",
 }
-"""Figures in the tables, and their decimals."""
 
-_SIZES: Final = {
-    "width_mm": 2,
-    "height_mm": 2,
-    "depth_mm": 2,
-    "frontal_area_m2": 6,
-    "mass_kg": 4,
-}
+_DECIMALS: Final = {"dBi": 3, "dB": 3, "°": 2, "Ω": 2, "": 3, "mm": 2, "m²": 6, "kg": 4}
+"""Decimals in the files, by unit."""
 
 
 def dimensions(reflectors: Reflectors, row: int) -> dict[str, float]:
@@ -106,15 +93,15 @@ def front_csv(front: Judged, reflectors: Reflectors, requirements: Requirements,
     """Return front.csv: one line a design, in the order of `front`."""
     text = io.StringIO()
     writer = csv.writer(text, lineterminator="\n")
-    writer.writerow([*DIMENSION_KEYS.values(), *_SIZES, *FIGURES, "smallest_margin", "model"])
+    writer.writerow([*DIMENSION_KEYS.values(), *_SIZE_UNITS, *FIGURES, "smallest_margin", "model"])
     size = sizes(reflectors, requirements)
     for row in range(len(front)):
         worst = figures(front, row)
         writer.writerow(
             [
                 *(f"{value!r}" for value in dimensions(reflectors, row).values()),
-                *(_cell(size[name][row], digits) for name, digits in _SIZES.items()),
-                *(_cell(worst[name], digits) for name, digits in FIGURES.items()),
+                *(_cell(size[name][row], _DECIMALS[unit]) for name, unit in _SIZE_UNITS.items()),
+                *(_cell(worst[name], _DECIMALS[about.unit]) for name, about in FIGURES.items()),
                 _cell(front.smallest_margin[row], 4),
                 model,
             ]

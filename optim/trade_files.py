@@ -9,7 +9,7 @@ import csv
 import math
 from collections.abc import Iterator, Sequence
 from pathlib import Path
-from typing import Final, SupportsFloat
+from typing import SupportsFloat
 
 import numpy as np
 
@@ -18,23 +18,16 @@ from optim.margins import SIZES
 from optim.plot_band import draw_band
 from optim.plot_maps import draw_map, in_file_units
 from optim.plot_prices import draw_prices
+from optim.quantities import FIGURES
+from optim.quantities import SIZES as ABOUT
 from optim.style import save
-from optim.tables import FIGURES, aligned
+from optim.tables import aligned
 from optim.trade import Trade
 from optim.trade_maps import Map
 from optim.trade_prices import STEPS, Price
 from optim.units import FILE_KEYS, VARIABLES, to_file
 
 __all__ = ["page", "write"]
-
-UNITS: Final = {
-    "frontal_area": "m²",
-    "volume": "m³",
-    "longest_side": "mm",
-    "sheet_area": "m²",
-    "mass": "kg",
-    "wind_load": "N",
-}
 
 
 def write(folder: Path, found: Trade) -> list[str]:
@@ -51,7 +44,7 @@ def write(folder: Path, found: Trade) -> list[str]:
         "prices": draw_prices(
             title=title,
             found=found.prices,
-            size=f"{size.replace('_', ' ')} ({UNITS[size]})",
+            size=f"{size.replace('_', ' ')} ({ABOUT[size].unit})",
             unit=SIZES[size],
             model=found.model,
         ),
@@ -90,7 +83,7 @@ def page(found: Trade) -> str:
 
 
 def _words(found: Trade) -> Iterator[str]:
-    size, unit = found.size.name.replace("_", " "), UNITS[found.size.name]
+    size, unit = found.size.name.replace("_", " "), ABOUT[found.size.name].unit
     scale = SIZES[found.size.name]
     yield found.requirements.title
     yield ""

@@ -92,7 +92,7 @@ def step_of(limit: Limit) -> float:
 
 
 def _level(limit: Limit, steps: float) -> float:
-    return limit.value + (1.0 if limit.sense == "min" else -1.0) * step_of(limit) * steps
+    return limit.at(step_of(limit) * steps)
 
 
 def levels(limit: Limit) -> FloatArray:
@@ -180,7 +180,7 @@ def _search(
 
 def moved(column: int, limit: Limit, value: float) -> View:
     """View the first goal alone, one limit moved to `value` (infinite: dropped)."""
-    harder = (value - limit.value) if limit.sense == "min" else (limit.value - value)
+    harder = limit.margins(np.array(value))
 
     def view(judged: Judged) -> tuple[FloatArray, FloatArray]:
         violations = judged.violations.copy()

@@ -13,7 +13,7 @@ import pytest
 
 from models import MODELS, Figures
 from optim import cli
-from optim.analysis import FIGURES
+from optim.quantities import FIGURES
 from optim.requirements import read_requirements
 
 DESIGN = """

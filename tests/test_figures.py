@@ -96,18 +96,24 @@ def test_step_in_an_envelope() -> None:
 
 
 def test_envelope_about_a_null() -> None:
-    # |f| = cos²θ ahead, and from 88° on nothing at all, as beside the dipole of `modal`.
-    cut = np.where(np.degrees(CUT_ANGLES) < 87.0, np.cos(CUT_ANGLES) ** 2, 0.0)
+    # |f| = cos²θ, with an exact null beside the ends of the dipole, as in `modal`.
+    cut = np.cos(CUT_ANGLES) ** 2
+    cut[np.isclose(CUT_ANGLES, np.pi / 2.0)] = 0.0
 
-    def excess(first: float, last: float) -> float:
+    def excess(cut: np.ndarray, first: float, last: float) -> float:
         mask = ((np.radians(first), -30.0), (np.radians(last), -30.0))
         return float(figures_of_merit(pattern(cut), Terms(mask_e=mask)).mask_e_db[0, 0])
 
-    at_68 = 40.0 * np.log10(np.cos(np.radians(68.0)))
-    assert excess(68.0, 90.0) == pytest.approx(30.0 + at_68, abs=1e-9)
-    assert excess(0.0, 180.0) == pytest.approx(30.0)
-    for ends in ((88.0, 90.0), (89.0, 91.0), (178.0, 180.0)):
-        assert excess(*ends) < -300.0
+    def exact(degrees: float) -> float:
+        return float(30.0 + 40.0 * np.log10(abs(np.cos(np.radians(degrees)))))
+
+    assert excess(cut, 68.0, 90.0) == pytest.approx(exact(68.0), abs=1e-9)
+    assert excess(cut, 90.0, 110.0) == pytest.approx(exact(110.0), abs=1e-9)
+    assert excess(cut, 88.0, 92.0) == pytest.approx(exact(88.0), abs=1e-9)
+    # Where a model has nothing at all, as `image` behind its plates, it has no answer either.
+    cut[46:] = 0.0
+    assert excess(cut, 68.0, 88.0) == pytest.approx(exact(68.0), abs=1e-9)
+    assert np.isnan(excess(cut, 0.0, 120.0))
 
 
 def test_folded_dipole_has_four_times_the_impedance() -> None:
