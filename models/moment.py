@@ -4,7 +4,8 @@ Far fields on both cuts, input impedance (Ω) and efficiency of plates of any si
 dipole, for any apex angle up to the flat sheet. Each pair of design and frequency is solved on
 three coarse grids whose cell counts stand in exact proportion, and far field and impedance are
 extrapolated to a vanishing cell. Where the grids disagree, or the power radiated is not the power
-put in, the pair is solved again on finer grids; what stays in doubt is said in `doubt_db`.
+put in, one finer grid after another joins and the three finest count; what stays in doubt is said
+in `doubt_db`.
 
 Source: Glisson & Wilton, IEEE Trans. AP-28 (1980), plates; Richmond & Geary, IEEE Trans. AP-23
 (1975), dipole; Richardson 1911, extrapolation.
@@ -12,99 +13,82 @@ Source: Glisson & Wilton, IEEE Trans. AP-28 (1980), plates; Richmond & Geary, IE
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import Final, Literal
 
 import numpy as np
 
 from models.build import Build
 from models.conventions import ETA0, ComplexArray, FloatArray, decibels, wavenumber
+from models.edges import WaveArray
 from models.geometry import Reflectors
+from models.moment_case import LADDER, Case, Rows
 from models.moment_field import Sky, View, plates_far_field
-from models.moment_kernel import near_reach
 from models.moment_plates import Grid, grid_cells
 from models.moment_wire import Wire, driven_shapes, gap_share, rod, sinusoidal_shape
 from models.pattern import CUT_ANGLES, Pattern
 
-__all__ = ["DENSITIES", "ENOUGH_DB", "Answer", "Case", "Feed", "answers", "doubt", "radiate"]
+__all__ = ["ENOUGH_DB", "VOUCHED_DB", "Feed", "Settled", "radiate", "settle"]
 
 Feed = Literal["solved", "sinusoidal"]
 """The dipole's current: solved with the plates, or imposed."""
 
-PROPORTION: Final = (2, 3, 4)
-"""Cell counts of the three grids, in multiples of a design's base count."""
+MOST_CELLS: Final = 4000
+"""Cells beyond which no finer grid is tried."""
 
-DENSITIES: Final = (1.8, 3.0, 4.5)
-"""Base cells a wavelength, at least: the first attempt and the finer ones."""
-
-ENOUGH_DB: Final = 0.05
-"""Doubt below which no finer grids are tried."""
+ENOUGH_DB: Final = 0.03
+"""Doubt below which no finer grid is tried."""
 
 VOUCHED_DB: Final = 0.3
-"""Doubt above which, after the finest grids, the model does not vouch for its answer."""
+"""Doubt above which, after the finest grid, the model does not vouch for its answer."""
 
-BATCH_NUMBERS: Final = 200_000
-"""Complex numbers in the matrices of one batch: what a processor's cache holds."""
+POWERS: Final = (0, 2, 4)
+"""Of the cell in the series for fields and impedance."""
 
-_NUMBERS: Final = ("power", "resistance", "reactance", "efficiency", "doubt_db")
+BATCH_NUMBERS: Final = 1_000_000
+"""Complex numbers in the matrices and waves of one batch: what a processor's cache holds."""
 
+GROUP_NUMBERS: Final = 100_000
+"""Complex numbers in the far fields of pairs settled together."""
 
-@dataclass(frozen=True, kw_only=True, eq=False)
-class Case:
-    """Pairs of one design and one frequency, each (n,); SI, radians."""
-
-    k: FloatArray
-    apex_angle: FloatArray
-    spacing: FloatArray
-    plate_width: FloatArray
-    plate_length: FloatArray
-    dipole_length: FloatArray
-    dipole_radius: FloatArray
-
-    @classmethod
-    def pairs(cls, reflectors: Reflectors, k: FloatArray) -> Case:
-        """Return all pairs of designs and wavenumbers, designs first."""
-        n = k.size
-        return cls(
-            k=np.tile(k, len(reflectors)),
-            apex_angle=np.repeat(reflectors.apex_angle, n),
-            spacing=np.repeat(reflectors.spacing, n),
-            plate_width=np.repeat(reflectors.plate_width, n),
-            plate_length=np.repeat(reflectors.plate_length, n),
-            dipole_length=np.repeat(reflectors.dipole_length, n),
-            dipole_radius=np.repeat(reflectors.dipole_diameter / 2.0, n),
-        )
-
-    def rows(self, index: np.ndarray) -> Case:
-        """Return the pairs at `index`."""
-        return Case(**{name: value[index] for name, value in vars(self).items()})
-
-    def counts(self, density: float) -> np.ndarray:
-        """Return what pairs of one batch share, (n, 4) integers.
-
-        Base counts along s and z, the near class, and the highest harmonic of the far field.
-        """
-        waves = self.k / (2.0 * np.pi)
-
-        def cells(size: FloatArray, least: int) -> FloatArray:
-            return np.maximum(np.ceil(density * size * waves - 1e-9), least)
-
-        base_s, base_z = cells(self.plate_width, 2), cells(self.plate_length, 2)
-        dipole = np.hypot(cells(self.spacing, 1), cells(self.dipole_length, 1) / 2.0)
-        reach = np.maximum(np.hypot(base_s, base_z / 2.0), dipole)
-        order = np.ceil(2.0 * np.pi * reach / density)
-        columns = [base_s, base_z, near_reach(self.apex_angle), order]
-        return np.stack(columns, axis=1).astype(int)
+_NOWHERE: Final = np.empty(0)
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)
-class Response:
+class Response(Rows):
     """The plates' answer to each of the wire's shapes at 1 A: fields and impedance, Ω."""
 
+    theta: ComplexArray | WaveArray
+    phi: ComplexArray | WaveArray
+    impedance: ComplexArray
+    square: ComplexArray | WaveArray
+
+
+@dataclass(frozen=True, kw_only=True, eq=False)
+class Settled(Rows):
+    """What is known of n pairs once their grids agree, for 1 A at the gap.
+
+    Fields on the cuts (n, n_angle) and towards other directions (n, n_dir), impedance and loss
+    resistance, Ω, and doubt, dB, (n,).
+    """
+
+    h_field: ComplexArray
+    e_field: ComplexArray
     theta: ComplexArray
     phi: ComplexArray
     impedance: ComplexArray
-    square: ComplexArray
+    loss: FloatArray
+    doubt_db: FloatArray
+
+    @property
+    def power(self) -> FloatArray:
+        """Return what `models.pattern` calls power, (n,)."""
+        return np.asarray(np.pi / ETA0 * self.impedance.real)
+
+    @property
+    def efficiency(self) -> FloatArray:
+        """Return radiated over accepted power, (n,)."""
+        return np.asarray(self.impedance.real / (self.impedance.real + self.loss))
 
 
 def radiate(
@@ -128,118 +112,153 @@ def radiate(
         Whether the dipole's current is solved, or imposed as sin(k(h−|z|)).
     """
     k = wavenumber(frequencies_hz)
-    case = Case.pairs(reflectors, k)
+    found = settle(Case.pairs(reflectors, k), build, feed)
+    values = {
+        "h_field": found.h_field,
+        "e_field": found.e_field,
+        "power": found.power,
+        "resistance": found.impedance.real + found.loss,
+        "reactance": found.impedance.imag,
+        "efficiency": found.efficiency,
+        "doubt_db": np.where(found.doubt_db <= VOUCHED_DB, found.doubt_db, np.inf),
+    }
     shape = (len(reflectors), k.size)
-    pattern = Pattern(
-        angles=CUT_ANGLES,
-        h_field=np.empty((case.k.size, CUT_ANGLES.size), dtype=np.complex128),
-        e_field=np.empty((case.k.size, CUT_ANGLES.size), dtype=np.complex128),
-        **{name: np.full(case.k.size, np.inf) for name in _NUMBERS},
-    )
-    names = ("h_field", "e_field", *_NUMBERS)
-    open_rows = np.arange(case.k.size)
-    for density in DENSITIES:
-        counts = case.rows(open_rows).counts(density)
-        keys, group = np.unique(counts, axis=0, return_inverse=True)
-        for index, key in enumerate(keys):
-            members = open_rows[group.reshape(-1) == index]
-            unknowns = int(key[0] * key[1]) * PROPORTION[-1] ** 2
-            size = max(1, BATCH_NUMBERS // unknowns**2)
-            for start in range(0, members.size, size):
-                rows = members[start : start + size]
-                part = _solve(case.rows(rows), key.tolist(), build, feed)
-                for name in names:
-                    getattr(pattern, name)[rows] = getattr(part, name)
-        open_rows = open_rows[pattern.doubt_db[open_rows] > ENOUGH_DB]
-    pattern.doubt_db[~(pattern.doubt_db <= VOUCHED_DB)] = np.inf
     return Pattern(
         angles=CUT_ANGLES,
-        **{name: (v := getattr(pattern, name)).reshape(*shape, *v.shape[1:]) for name in names},
+        **{name: value.reshape(*shape, *value.shape[1:]) for name, value in values.items()},
     )
 
 
-def _solve(case: Case, key: list[int], build: Build, feed: Feed) -> Pattern:
-    """Return the pattern of pairs on grids of equal counts, without the frequency axis."""
-    sky = Sky.of(key[3])
-    answer, rough = answers(case, key, feed, sky)
-    resistance = answer.impedance.real
-    # √(ωμ/2σ) times the currents' squares: the loss is small enough not to change the currents.
-    skin = np.sqrt(case.k * ETA0 / (2.0 * build.conductivity))
-    loss = skin * answer.square
-    h_field, e_field = sky.cuts(answer.theta)
-    return Pattern(
-        angles=CUT_ANGLES,
-        h_field=h_field,
-        e_field=e_field,
-        power=np.pi / ETA0 * resistance,
-        resistance=resistance + loss,
-        reactance=answer.impedance.imag,
-        efficiency=resistance / (resistance + loss),
-        doubt_db=doubt(sky, answer, rough),
-    )
-
-
-def answers(case: Case, key: list[int], feed: Feed, sky: Sky) -> tuple[Answer, Answer]:
-    """Return fields towards `sky` and impedance of pairs, from all grids and from the finer two.
+def settle(
+    case: Case,
+    build: Build,
+    feed: Feed = "solved",
+    theta: FloatArray = _NOWHERE,
+    phi: FloatArray = _NOWHERE,
+) -> Settled:
+    """Return fields on the cuts and towards θ and φ, impedance, loss and doubt of n pairs.
 
     Parameters
     ----------
     case : Case
         n pairs.
-    key : list of int
-        Their counts, as `Case.counts` gives them.
+    build : Build
+        Its conductivity sets the loss.
     feed : {"solved", "sinusoidal"}
-    sky : Sky
+    theta, phi : (n_dir,)
+        Directions besides the cuts, radians.
     """
-    base_s, base_z, reach, _ = key
-    wire, shapes, gap, own = _dipole(case, feed)
-    alone = _alone(case, wire, shapes, own, sky)
-    view = View.of(sky, case.apex_angle)
-    grids = [
-        _respond(case, wire, shapes, view, (f * base_s, f * base_z), reach) for f in PROPORTION
+    keys, group = np.unique(case.keys(), axis=0, return_inverse=True)
+    places, parts = [], []
+    for index, key in enumerate(keys.tolist()):
+        members = np.flatnonzero(group.reshape(-1) == index)
+        sky = Sky.of(key[-1]).also(theta, phi)
+        size = max(1, GROUP_NUMBERS // sky.theta.size)
+        for start in range(0, members.size, size):
+            places.append(members[start : start + size])
+            parts.append(_settled(case.rows(places[-1]), key, build, feed, sky))
+    return Settled.join(parts).rows(np.argsort(np.concatenate(places)))
+
+
+def _settled(case: Case, key: list[int], build: Build, feed: Feed, sky: Sky) -> Settled:
+    """Return what is known of pairs with the same key."""
+    answer, doubt = _answer(Front.of(case, feed, sky), key, [])
+    h_field, e_field = sky.cuts(answer.theta)
+    around = sky.weights.size
+    return Settled(
+        h_field=h_field,
+        e_field=e_field,
+        theta=answer.theta[:, 2 * sky.count + around :],
+        phi=answer.phi[:, around:],
+        impedance=answer.impedance,
+        # √(ωμ/2σ) times the currents' squares: too small a loss to change the currents.
+        loss=np.sqrt(case.k * ETA0 / (2.0 * build.conductivity)) * answer.square,
+        doubt_db=doubt,
+    )
+
+
+@dataclass(frozen=True, kw_only=True, eq=False)
+class Front:
+    """What is in front of the plates: dipole, its shapes, their currents at the gap; the sky."""
+
+    case: Case
+    wire: Wire
+    shapes: ComplexArray
+    gap: ComplexArray
+    alone: Response
+    view: View
+
+    @classmethod
+    def of(cls, case: Case, feed: Feed, sky: Sky) -> Front:
+        """Return what is in front of the plates of `case`."""
+        if feed == "solved":
+            wire = rod(k=case.k, length=case.dipole_length, radius=case.dipole_radius)
+            modes = wire.impedance()
+            shapes = driven_shapes(wire, modes)
+            gap = (gap_share(wire)[:, None] @ shapes)[:, 0]
+        else:
+            wire = Wire(k=case.k, length=case.dipole_length, radius=case.dipole_radius)
+            modes, shapes = wire.impedance(), sinusoidal_shape(wire)
+            gap = shapes[:, 0]
+        path = (case.k * case.spacing)[:, None] * (np.sin(sky.theta) * np.cos(sky.phi))
+        far = wire.far_field(shapes, np.cos(sky.theta)).swapaxes(1, 2)
+        square = shapes.conj().swapaxes(1, 2) @ wire.current_square() @ shapes
+        alone = Response(
+            theta=far * np.exp(1j * path)[:, None],
+            phi=np.zeros((case.k.size, 1, 1), dtype=np.complex128),
+            impedance=np.asarray(shapes.swapaxes(1, 2) @ modes @ shapes),
+            square=square / (2.0 * np.pi * case.dipole_radius[:, None, None]),
+        )
+        view = View.of(sky, case.apex_angle)
+        return cls(case=case, wire=wire, shapes=shapes, gap=gap, alone=alone, view=view)
+
+    def rows(self, index: np.ndarray | slice) -> Front:
+        """Return the rows at `index`."""
+        wire = self.wire
+        return Front(
+            case=self.case.rows(index),
+            wire=replace(
+                wire, k=wire.k[index], length=wire.length[index], radius=wire.radius[index]
+            ),
+            shapes=self.shapes[index],
+            gap=self.gap[index],
+            alone=self.alone.rows(index),
+            view=self.view.rows(index),
+        )
+
+
+def _answer(front: Front, key: list[int], coarser: list[Response]) -> tuple[Answer, FloatArray]:
+    """Return what a key's grid and the two before it give, or finer ones, and the doubt, dB."""
+    base_s, base_z, last, reach, order = key
+    steps = LADDER[last - 2 : last + 1]
+    grids = coarser + [
+        _respond(front, (f * base_s, f * base_z), reach) for f in steps[len(coarser) :]
     ]
-    return (
-        _drive(gap, alone, _limit(grids, (0, 2, 4))),
-        _drive(gap, alone, _limit(grids[1:], (0, 2))),
-    )
+    answer = _drive(front, _limit(grids, steps))
+    doubt = _doubt(front.view.sky, answer, _drive(front, _limit(grids[1:], steps[1:])))
+    open_rows = np.flatnonzero(doubt > ENOUGH_DB)
+    finer = [step for step in LADDER[last + 1 :] if step**2 * base_s * base_z <= MOST_CELLS]
+    if open_rows.size and finer:
+        better, doubt[open_rows] = _answer(
+            front.rows(open_rows),
+            [base_s, base_z, last + 1, reach, order],
+            [grid.rows(open_rows) for grid in grids[1:]],
+        )
+        answer.put(open_rows, better)
+    return answer, doubt
 
 
-def _dipole(case: Case, feed: Feed) -> tuple[Wire, ComplexArray, ComplexArray, ComplexArray]:
-    """Return the wire, its shapes, their currents at the gap and their impedances alone."""
-    if feed == "solved":
-        wire = rod(k=case.k, length=case.dipole_length, radius=case.dipole_radius)
-        modes = wire.impedance()
-        shapes = driven_shapes(wire, modes)
-        gap = (gap_share(wire)[:, None] @ shapes)[:, 0]
-    else:
-        wire = Wire(k=case.k, length=case.dipole_length, radius=case.dipole_radius)
-        modes, shapes = wire.impedance(), sinusoidal_shape(wire)
-        gap = shapes[:, 0]
-    return wire, shapes, gap, np.asarray(shapes.swapaxes(1, 2) @ modes @ shapes)
-
-
-def _alone(case: Case, wire: Wire, shapes: ComplexArray, own: ComplexArray, sky: Sky) -> Response:
-    """Return fields, impedance and squared current of the dipole in free space."""
-    theta, phi = sky.theta, sky.phi
-    path = (case.k * case.spacing)[:, None] * (np.sin(theta) * np.cos(phi))
-    rod = shapes.conj().swapaxes(1, 2) @ wire.current_square() @ shapes
-    return Response(
-        theta=wire.far_field(shapes, np.cos(theta)).swapaxes(1, 2) * np.exp(1j * path)[:, None],
-        phi=np.zeros(1, dtype=np.complex128),
-        impedance=own,
-        square=rod / (2.0 * np.pi * case.dipole_radius[:, None, None]),
-    )
-
-
-def _respond(
-    case: Case,
-    wire: Wire,
-    shapes: ComplexArray,
-    view: View,
-    counts: tuple[int, int],
-    reach: int,
-) -> Response:
+def _respond(front: Front, counts: tuple[int, int], reach: int) -> Response:
     """Return what the plates do on a grid of `counts` cells."""
+    unknowns, directions = counts[0] * counts[1], front.view.sky.theta.size
+    size = max(1, BATCH_NUMBERS // (unknowns**2 + 4 * counts[0] * directions))
+    starts = range(0, front.gap.shape[0], size)
+    return Response.join([_batch(front.rows(slice(i, i + size)), counts, reach) for i in starts])
+
+
+def _batch(front: Front, counts: tuple[int, int], reach: int) -> Response:
+    """Return what the plates of one batch do on a grid of `counts` cells."""
+    case = front.case
     cells = grid_cells(
         *counts,
         k=case.k,
@@ -248,12 +267,9 @@ def _respond(
         plate_length=case.plate_length,
     )
     grid = Grid(cells=cells)
-    voltages = grid.voltages(wire, shapes, case.spacing)
-    scale = (4.0 * np.pi / ETA0 * case.k / 1j)[:, None, None]
-    currents = np.linalg.solve(grid.matrix(reach), scale * voltages).astype(
-        np.complex128, copy=False
-    )
-    theta, phi = plates_far_field(grid, currents, view)
+    voltages = grid.voltages(front.wire, front.shapes, case.spacing)
+    currents = grid.currents(reach, voltages)
+    theta, phi = plates_far_field(grid, currents, front.view)
     return Response(
         theta=theta,
         phi=phi,
@@ -263,14 +279,14 @@ def _respond(
     )
 
 
-def _limit(grids: list[Response], powers: tuple[int, ...]) -> Response:
-    """Return fields and impedance for a vanishing cell, from a series in these powers of it.
+def _limit(grids: list[Response], steps: tuple[int, ...]) -> Response:
+    """Return fields and impedance for a vanishing cell from grids of these proportions.
 
     The loss stays that of the finest grid.
     """
-    cell = 1.0 / np.array(PROPORTION[-len(grids) :], dtype=np.float64)
-    rows = cell ** np.array(powers, dtype=np.float64)[:, None]
-    weights = np.linalg.solve(rows, np.eye(cell.size)[0])
+    cell = 1.0 / np.array(steps)
+    rows = cell ** np.array(POWERS[: cell.size])[:, None]
+    weights = np.linalg.solve(rows, np.eye(cell.size)[0]).tolist()
 
     def limit(name: str) -> ComplexArray:
         parts = [w * getattr(grid, name) for w, grid in zip(weights, grids, strict=True)]
@@ -285,7 +301,7 @@ def _limit(grids: list[Response], powers: tuple[int, ...]) -> Response:
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)
-class Answer:
+class Answer(Rows):
     """Dipole and plates together, for 1 A at the gap: fields, impedance, Ω, squared current, A²."""
 
     theta: ComplexArray
@@ -294,8 +310,9 @@ class Answer:
     square: FloatArray
 
 
-def _drive(gap: ComplexArray, alone: Response, plates: Response) -> Answer:
+def _drive(front: Front, plates: Response) -> Answer:
     """Return dipole and plates with the wire's shapes in the shares that 1 A at the gap asks."""
+    gap, alone = front.gap, front.alone
     total = alone.impedance + plates.impedance
     shares = np.linalg.solve(total, gap[..., None])
     impedance = 1.0 / (gap[:, None] @ shares)
@@ -309,7 +326,7 @@ def _drive(gap: ComplexArray, alone: Response, plates: Response) -> Answer:
     )
 
 
-def doubt(sky: Sky, answer: Answer, rough: Answer) -> FloatArray:
+def _doubt(sky: Sky, answer: Answer, rough: Answer) -> FloatArray:
     """Return how far grids, and radiated and accepted power, disagree, dB."""
     with np.errstate(divide="ignore", invalid="ignore"):
         level = [sky.boresight(a.theta) / np.sqrt(a.impedance.real) for a in (answer, rough)]

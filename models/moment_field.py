@@ -9,13 +9,13 @@ even band-limited function.
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from functools import lru_cache
 
 import numpy as np
 
 from models.conventions import ComplexArray, FloatArray
-from models.moment_kernel import cosine_and_sine
+from models.edges import SingleArray, WaveArray, turn
 from models.moment_plates import Grid
 from models.pattern import CUT_ANGLES
 
@@ -32,7 +32,7 @@ class Sky:
         Samples on each cut, in the middles of equal parts of 0 to π.
     theta, phi : (n_dir,)
         Angle from the z axis and from boresight, radians.
-    weights : (n_dir - 2 count,)
+    weights : (n_around,)
         Of the sphere's samples; they sum to 1.
     interpolation : (count, n_angle)
         From a cut's samples to `CUT_ANGLES`.
@@ -76,9 +76,15 @@ class Sky:
         """Return f_θ on boresight, (n,)."""
         return np.asarray(theta[:, : self.count] @ self.interpolation[:, 0])
 
+    def also(self, theta: FloatArray, phi: FloatArray) -> Sky:
+        """Return this sky with more directions θ, φ (n_more,), radians, behind its own."""
+        return replace(self, theta=np.append(self.theta, theta), phi=np.append(self.phi, phi))
+
     def mean_square(self, theta: ComplexArray, phi: ComplexArray) -> FloatArray:
         """Return the mean of |f|² over the sphere, (n,)."""
-        square = np.abs(theta[:, 2 * self.count :]) ** 2 + np.abs(phi) ** 2
+        around = self.weights.size
+        first = 2 * self.count
+        square = np.abs(theta[:, first : first + around]) ** 2 + np.abs(phi[:, :around]) ** 2
         return np.asarray(square @ self.weights)
 
 
@@ -131,10 +137,12 @@ class View:
             across=np.stack([odd[1] - even[1], -odd[1] - even[1]]),
         )
 
+    def rows(self, index: np.ndarray | slice) -> View:
+        """Return the view for the apex angles at `index`."""
+        return View(sky=self.sky, along=self.along[:, index], across=self.across[:, index])
 
-def plates_far_field(
-    grid: Grid, currents: ComplexArray, view: View
-) -> tuple[ComplexArray, ComplexArray]:
+
+def plates_far_field(grid: Grid, currents: WaveArray, view: View) -> tuple[WaveArray, WaveArray]:
     """Return f_θ (n, m, n_dir) of both plates, and f_φ off the cuts (on them it is 0).
 
     Parameters
@@ -149,51 +157,40 @@ def plates_far_field(
     cells, sky = grid.cells, view.sky
     j_z, j_s = grid.split(currents)
     sine, cosine = np.sin(sky.theta), np.cos(sky.theta)
-    at_cells, at_edges = _waves(grid, cells.k[:, None] * sine * view.along)
-    edges, middles = (cells.k[:, None, None] * z[..., None] for z in grid.heights())
-    even, odd = np.cos(edges * cosine), np.sin(middles * cosine)
-    moment_z, moment_s = (cells.k * size for size in (cells.size_z, 1j * cells.size_s))
-    even *= moment_z[:, None, None] * sine
+    k_along = cells.k[:, None] * sine * view.along
+    at_cells, at_edges = _waves(k_along, cells.centres()), _waves(k_along, cells.edges())
+    edges, middles = (
+        ((cells.k[:, None] * z)[..., None] * cosine).astype(np.float32) for z in grid.heights()
+    )
+    moment_z, moment_s = ((cells.k * size)[:, None, None] for size in (cells.size_z, cells.size_s))
+    even = np.cos(edges) * (moment_z * sine).astype(np.float32)
+    odd = np.sin(middles) * moment_s.astype(np.float32)
     f_theta = _sum(at_cells[0] + at_cells[1], even, j_z)
     # Nothing of J_s, which is odd in z, is seen on the H-plane.
     tilted, off = slice(sky.count, None), slice(2 * sky.count, None)
     toward = _both(at_edges, cosine * view.along, tilted)
-    f_theta[..., tilted] -= moment_s[:, None, None] * _sum(toward, odd[..., tilted], j_s)
+    f_theta[..., tilted] -= 1j * _sum(toward, odd[..., tilted], j_s)
     aside = _sum(_both(at_edges, view.across, off), odd[..., off], j_s)
-    return f_theta, -moment_s[:, None, None] * aside
+    return f_theta, -1j * aside
 
 
-def _both(waves: ComplexArray, part: FloatArray, which: slice) -> ComplexArray:
+def _both(waves: WaveArray, part: FloatArray, which: slice) -> WaveArray:
     """Return the sum over the plates of waves (2, n, n_s, n_dir) times part (2, n, n_dir)."""
-    one, two = (waves[i, ..., which] * part[i, :, None, which] for i in (0, 1))
+    parts = part.astype(np.float32)[:, :, None, which]
+    one, two = (waves[i, ..., which] * parts[i] for i in (0, 1))
     one += two
     return np.asarray(one)
 
 
-def _waves(grid: Grid, k_along: FloatArray) -> tuple[ComplexArray, ComplexArray]:
-    """Return e^{jks·(direction along the plate)} at cells and edges, (2, n, n_s, n_dir) each."""
-    cells = grid.cells
-    half_step = _turn(k_along * (0.5 * cells.size_s)[:, None])
-    step = half_step**2
-    sides, size, directions = k_along.shape
-    at_cells = np.empty((sides, size, cells.count_s, directions), dtype=np.complex128)
-    np.multiply(_turn(k_along * cells.start[:, None]), half_step, out=at_cells[:, :, 0])
-    for i in range(1, cells.count_s):
-        np.multiply(at_cells[:, :, i - 1], step, out=at_cells[:, :, i])
-    return at_cells, at_cells[:, :, :-1] * half_step[:, :, None]
+def _waves(k_along: FloatArray, s: FloatArray) -> WaveArray:
+    """Return e^{jks·(direction along the plate)} at s (n, n_s), (2, n, n_s, n_dir)."""
+    return turn(-(k_along.astype(np.float32)[:, :, None] * s.astype(np.float32)[..., None]))
 
 
-def _sum(along_s: ComplexArray, along_z: FloatArray, currents: ComplexArray) -> ComplexArray:
+def _sum(along_s: WaveArray, along_z: SingleArray, currents: WaveArray) -> WaveArray:
     """Return Σ of currents (n, n_s, rows, m) times (n, n_s, n_dir) times (n, rows, n_dir)."""
     size, n_s, rows, m = currents.shape
     flat = currents.transpose(0, 3, 2, 1).reshape(size, m * rows, n_s)
-    over_s: ComplexArray = (flat @ along_s).reshape(size, m, rows, -1)
+    over_s: WaveArray = (flat @ along_s).reshape(size, m, rows, -1)
     over_s *= along_z[:, None]
     return np.asarray(over_s.sum(axis=2))
-
-
-def _turn(phase: FloatArray) -> ComplexArray:
-    """Return e^{j·phase}."""
-    wave = np.empty(phase.shape, dtype=np.complex128)
-    wave.real, wave.imag = cosine_and_sine(phase)
-    return wave

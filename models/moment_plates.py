@@ -18,21 +18,21 @@ Source: Glisson & Wilton, IEEE Trans. AP-28 (1980).
 from __future__ import annotations
 
 from dataclasses import dataclass
-from functools import lru_cache
 from typing import Final
 
 import numpy as np
+from numpy.lib.stride_tricks import as_strided
+from scipy.linalg.lapack import cgesv
 
-from models.conventions import ComplexArray, FloatArray
-from models.moment_kernel import Cells, between_plates, own_plate
+from models.conventions import ETA0, ComplexArray, FloatArray
+from models.edges import WaveArray
+from models.moment_kernel import Cells, kernels
 from models.moment_wire import Wire
 
 __all__ = ["EDGE", "Grid", "grid_cells"]
 
 EDGE: Final = 0.17466
 """How far inside the last cell's end the edge of a strip acts, in cells."""
-
-_REMEMBERED_CELLS: Final = 256
 
 
 def apex_shift(apex_angle: FloatArray) -> FloatArray:
@@ -82,7 +82,7 @@ class Grid:
         size = self.cells.size_z[:, None]
         return size * (rows + 0.5 * odd), size * (rows + 0.5 + 0.5 * odd)
 
-    def matrix(self, reach: int) -> ComplexArray:
+    def matrix(self, reach: int) -> WaveArray:
         """Return the matrix over jη/(4πk), (n, N, N), without unit.
 
         Parameters
@@ -92,34 +92,49 @@ class Grid:
         """
         cells = self.cells
         shift = np.arange(cells.count_s)
-        own = own_plate(cells).take(np.abs(shift[:, None] - shift), axis=1)
-        table, at_edges = between_plates(cells, reach)
+        own, table, at_edges = kernels(cells, reach)
+        own = own.take(np.abs(shift[:, None] - shift), axis=1)
         # J_s on the other plate points along its slope, cos α of it this way.
-        turn = np.cos(cells.apex_angle)[:, None, None, None]
+        turn, k2_z, k2_s = (
+            x.astype(np.float32)[:, None, None, None]
+            for x in (
+                np.cos(cells.apex_angle),
+                (cells.k * cells.size_z) ** 2,
+                (cells.k * cells.size_s) ** 2,
+            )
+        )
         turned = turn * table
         turned += own
         table += own
         # Tables over the distance in z: J_z on J_z, J_z on J_s, J_s on J_s. The vector potential is
         # that of a rooftop, a mean of neighbouring cells' kernels, along the whole test line.
-        k2_z, k2_s = ((cells.k * size) ** 2 for size in (cells.size_z, cells.size_s))
         zz = -2.0 * table[..., :-1]
         zz += table[..., 1:]
         zz[..., 1:] += table[..., :-2]
         zz[..., 0] += table[..., 1]
-        zz *= (1.0 + k2_z / 12.0)[:, None, None, None]
-        zz += k2_z[:, None, None, None] * table[..., :-1]
+        zz *= 1.0 + k2_z / 12.0
+        zz += k2_z * table[..., :-1]
         across = table[:, :, :-1] - table[:, :, 1:]
         zs = across[..., 1:] - across[..., :-1]
         turned = turned[:, 1:] + turned[:, :-1]
         ss = turned[:, :, 1:] + turned[:, :, :-1]
-        ss *= (k2_s / 12.0)[:, None, None, None]
+        ss *= k2_s / 12.0
         at_edges *= turn
         at_edges += own[:, 1:, 1:]
-        at_edges *= (k2_s / 1.5)[:, None, None, None]
+        at_edges *= k2_s / 1.5
         ss += at_edges
         ss += across[:, 1:]
         ss -= across[:, :-1]
         return _fold(cells.count_s, cells.count_z, zz, zs, ss)
+
+    def currents(self, reach: int, voltages: ComplexArray) -> WaveArray:
+        """Return the unknowns (n, N, m), A, that `voltages` (n, N, m), V, drive."""
+        cells = self.cells
+        given = ((4.0 * np.pi / ETA0 * cells.k / 1j)[:, None, None] * voltages).astype(np.complex64)
+        for matrix, right in zip(self.matrix(reach), given, strict=True):
+            # The matrix is its own transpose, and that is what LAPACK reads without a copy.
+            right[...] = cgesv(matrix.T, right, overwrite_a=True)[2]
+        return given
 
     def voltages(self, wire: Wire, shapes: ComplexArray, spacing: FloatArray) -> ComplexArray:
         """Return ∫E dl of the wire's shapes over the test lines, V, (n, N, n_shape)."""
@@ -142,7 +157,7 @@ class Grid:
             axis=1,
         )
 
-    def split(self, unknowns: ComplexArray) -> tuple[ComplexArray, ComplexArray]:
+    def split(self, unknowns: WaveArray) -> tuple[WaveArray, WaveArray]:
         """Return J_z (n, count_s, rows, m) and J_s (n, count_s - 1, rows, m) unknowns apart."""
         n_s, rows = self.cells.count_s, self.cells.count_z // 2
         size, _, m = unknowns.shape
@@ -152,7 +167,7 @@ class Grid:
             unknowns[:, first:].reshape(size, n_s - 1, rows, m),
         )
 
-    def current_square(self, unknowns: ComplexArray) -> ComplexArray:
+    def current_square(self, unknowns: WaveArray) -> WaveArray:
         """Return ∫ J_m*·J_n dS over both plates for currents (n, N, m) in A, A², (n, m, m)."""
         cells = self.cells
         weight = np.full(cells.count_z // 2, 4.0)
@@ -163,49 +178,38 @@ class Grid:
         weights = np.concatenate(
             [ratio * np.tile(weight, n_s), 4.0 / ratio * np.ones(weight.size * (n_s - 1))], axis=1
         )
-        return np.asarray(unknowns.conj().swapaxes(1, 2) @ (weights[..., None] * unknowns))
+        weighted = weights[..., None].astype(np.float32) * unknowns
+        return np.asarray(unknowns.conj().swapaxes(1, 2) @ weighted)
 
 
-@lru_cache(maxsize=128)
-def _fold_indices(n_s: int, n_z: int) -> tuple[np.ndarray, ...]:
-    """Return places in the three tables of direct and mirrored partner, and the direct sign."""
-    rows, odd = n_z // 2, n_z % 2
-    r = np.arange(rows)
-    apart, both = np.abs(r[:, None] - r), r[:, None] + r
-    # J_z edge n lies at n + odd/2, J_s cell j at j + 1/2 + odd/2: half steps in between.
-    gap = r[:, None] - r - 0.5
-
-    def places(first: int, second: int, length: int, index: np.ndarray) -> np.ndarray:
-        i, j = np.arange(first)[:, None, None, None], np.arange(second)[:, None]
-        place = (i * second + j) * length + index[:, None, :]
-        return np.asarray(place.reshape(first * rows, second * rows))
-
-    cross = (np.abs(gap) - 0.5).astype(np.intp)
-    sign = np.broadcast_to(np.sign(gap)[None, :, None, :], (n_s, rows, n_s - 1, rows))
-    return (
-        places(n_s, n_s, n_z - 1, apart),
-        places(n_s, n_s, n_z - 1, both + odd),
-        places(n_s, n_s - 1, n_z - 1, cross),
-        places(n_s, n_s - 1, n_z - 1, both + odd),
-        places(n_s - 1, n_s - 1, n_z, apart),
-        places(n_s - 1, n_s - 1, n_z, both + 1 + odd),
-        sign.reshape(n_s * rows, (n_s - 1) * rows),
-    )
-
-
-def _fold(n_s: int, n_z: int, zz: ComplexArray, zs: ComplexArray, ss: ComplexArray) -> ComplexArray:
+def _fold(n_s: int, n_z: int, zz: WaveArray, zs: WaveArray, ss: WaveArray) -> WaveArray:
     """Return the matrix of a quarter from tables over distance: J_z is even in z, J_s odd."""
-    # Small grids come again and again; the places of large ones are not worth their memory.
-    indices = _fold_indices if n_s * n_z <= _REMEMBERED_CELLS else _fold_indices.__wrapped__
-    zz_one, zz_two, zs_one, zs_two, ss_one, ss_two, sign = indices(n_s, n_z)
-    size, first, total = zz.shape[0], zz_one.shape[0], zz_one.shape[0] + ss_one.shape[0]
-    zz, zs, ss = (x.reshape(size, -1) for x in (zz, zs, ss))
-    matrix = np.empty((size, total, total), dtype=np.complex128)
-    np.add(zz.take(zz_one, axis=1), zz.take(zz_two, axis=1), out=matrix[:, :first, :first])
-    np.subtract(ss.take(ss_one, axis=1), ss.take(ss_two, axis=1), out=matrix[:, first:, first:])
-    cross = zs.take(zs_one, axis=1)
-    cross *= sign
-    cross -= zs.take(zs_two, axis=1)
-    matrix[:, :first, first:] = cross
-    matrix[:, first:, :first] = cross.swapaxes(1, 2)
+    rows, odd = n_z // 2, n_z % 2
+    size, first, total = zz.shape[0], n_s * rows, (2 * n_s - 1) * rows
+    matrix = np.empty((size, total, total), dtype=np.complex64)
+
+    def place(i: slice, j: slice) -> WaveArray:
+        """Return a part of the matrix as (n, s, row, s', row')."""
+        part = matrix[:, i, j]
+        lengths = (size, part.shape[1] // rows, rows, part.shape[2] // rows, rows)
+        each, down, right = part.strides
+        return as_strided(part, lengths, (each, rows * down, down, rows * right, right))
+
+    def spread(along: WaveArray, first: int, step: int) -> WaveArray:
+        """Return along[..., first + step·row + row'] as (n, s, row, s', row')."""
+        each, down, right, one = along.strides
+        lengths = (size, along.shape[1], rows, along.shape[2], rows)
+        return as_strided(along[..., first:], lengths, (each, down, step * one, right, one))
+
+    def direct(table: WaveArray, back: WaveArray) -> WaveArray:
+        """Return what row' does over row' − row, from `back` where it is the lower one."""
+        along = np.concatenate([back[..., : rows - 1][..., ::-1], table[..., :rows]], axis=-1)
+        return spread(along, rows - 1, -1)
+
+    along_z, along_s = slice(first), slice(first, None)
+    # J_z edge n lies at n + odd/2, J_s cell j at j + 1/2 + odd/2: half steps in between.
+    np.add(direct(zz, zz[..., 1:]), spread(zz, odd, 1), out=place(along_z, along_z))
+    np.subtract(direct(ss, ss[..., 1:]), spread(ss, 1 + odd, 1), out=place(along_s, along_s))
+    np.subtract(direct(-zs, zs), spread(zs, odd, 1), out=place(along_z, along_s))
+    matrix[:, along_s, along_z] = matrix[:, along_z, along_s].swapaxes(1, 2)
     return matrix

@@ -1,7 +1,7 @@
 """`moment` over the whole sphere: f_θ and f_φ of both plates and dipole in any directions.
 
-Frame and scale are those of `models.pattern`. Each pair of design and frequency is solved on the
-grids that `models.moment` settles on, so the sphere agrees with the cuts.
+Frame and scale are those of `models.pattern`. The grids are those that `models.moment` settles on,
+so the sphere agrees with the cuts.
 """
 
 from __future__ import annotations
@@ -9,10 +9,10 @@ from __future__ import annotations
 import numpy as np
 
 from models.build import Build
-from models.conventions import ComplexArray, FloatArray, wavenumber
+from models.conventions import FloatArray, wavenumber
 from models.geometry import Reflectors
-from models.moment import DENSITIES, ENOUGH_DB, Case, answers, doubt, radiate
-from models.moment_field import Sky
+from models.moment import settle
+from models.moment_case import Case
 from models.pattern import Sphere
 
 __all__ = ["sphere"]
@@ -38,33 +38,15 @@ def sphere(
     theta, phi : (n_theta,), (n_phi,)
         Radians.
     """
-    pattern = radiate(reflectors, frequencies_hz, build)
-    case = Case.pairs(reflectors, wavenumber(frequencies_hz))
-    towards = Sky(
-        count=0,
-        theta=np.repeat(theta, phi.size),
-        phi=np.tile(phi, theta.size),
-        weights=np.empty(0),
-        interpolation=np.empty((0, 0)),
-    )
-    pairs = [_towards(case.rows(np.array([row])), towards) for row in range(case.k.size)]
-    shape = (*pattern.power.shape, theta.size, phi.size)
+    k = wavenumber(frequencies_hz)
+    towards = np.repeat(theta, phi.size), np.tile(phi, theta.size)
+    found = settle(Case.pairs(reflectors, k), build, "solved", *towards)
+    pairs = (len(reflectors), k.size)
     return Sphere(
         theta=theta,
         phi=phi,
-        theta_field=np.reshape([f_theta for f_theta, _ in pairs], shape),
-        phi_field=np.reshape([f_phi for _, f_phi in pairs], shape),
-        power=pattern.power,
-        efficiency=pattern.efficiency,
+        theta_field=found.theta.reshape(*pairs, theta.size, phi.size),
+        phi_field=found.phi.reshape(*pairs, theta.size, phi.size),
+        power=found.power.reshape(pairs),
+        efficiency=found.efficiency.reshape(pairs),
     )
-
-
-def _towards(case: Case, towards: Sky) -> tuple[ComplexArray, ComplexArray]:
-    """Return f_θ and f_φ of one pair, (n_dir,) each."""
-    for density in DENSITIES:
-        key = case.counts(density)[0].tolist()
-        sky = Sky.of(key[-1])
-        if doubt(sky, *answers(case, key, "solved", sky))[0] <= ENOUGH_DB:
-            break
-    answer, _ = answers(case, key, "solved", towards)
-    return answer.theta[0], answer.phi[0]

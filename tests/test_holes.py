@@ -12,7 +12,7 @@ from pathlib import Path
 import numpy as np
 import pytest
 
-from models import moment
+from models import moment, moment_case
 from models.figures import Figures, figures_of_merit
 from optim.archive import diverse
 from optim.run import Options, run
@@ -62,7 +62,7 @@ def let_loose(
     frequency = result.requirements.band.frequencies()
     build = result.requirements.build
     told = figures_of_merit(moment.radiate(reflectors, frequency, build))
-    monkeypatch.setattr(moment, "DENSITIES", (2.0 * moment.DENSITIES[0],))
+    monkeypatch.setattr(moment_case, "DENSITY", 2.0 * moment_case.DENSITY)
     finer = figures_of_merit(moment.radiate(reflectors, frequency, build))
     return told, finer
 
