@@ -36,7 +36,7 @@ Feed = Literal["solved", "sinusoidal"]
 MOST_CELLS: Final = 4000
 """Cells beyond which no finer grid is tried."""
 
-ENOUGH_DB: Final = 0.03
+ENOUGH_DB: Final = 0.05
 """Doubt below which no finer grid is tried."""
 
 VOUCHED_DB: Final = 0.3
@@ -327,11 +327,14 @@ def _drive(front: Front, plates: Response) -> Answer:
 
 
 def _doubt(sky: Sky, answer: Answer, rough: Answer) -> FloatArray:
-    """Return how far grids, and radiated and accepted power, disagree, dB."""
+    """Return how far grids, in field and impedance, and power in and out disagree, dB."""
     with np.errstate(divide="ignore", invalid="ignore"):
         level = [sky.boresight(a.theta) / np.sqrt(a.impedance.real) for a in (answer, rough)]
         grids = decibels((1.0 + np.abs(level[0] - level[1]) / np.abs(level[0])) ** 2)
+        # Fields may agree by chance; a search finds where, and there impedances do not.
+        ohms = decibels(1.0 + np.abs(rough.impedance / answer.impedance - 1.0))
         accepted = np.pi / ETA0 * answer.impedance.real
         balance = np.abs(decibels(sky.mean_square(answer.theta, answer.phi) / accepted))
     # Where a resistance is not positive the levels are NaN, and there is nothing to vouch for.
-    return np.nan_to_num(np.maximum(grids, balance), nan=np.inf, posinf=np.inf)
+    worst = np.maximum(np.maximum(grids, ohms), balance)
+    return np.nan_to_num(worst, nan=np.inf, posinf=np.inf)

@@ -20,8 +20,11 @@ from models.moment_kernel import near_reach
 
 __all__ = ["DENSITY", "FIRST", "LADDER", "Case", "Rows"]
 
-DENSITY: Final = 6.25
+DENSITY: Final = 6.75
 """Cells a wavelength, at least, of the finest of the first three grids."""
+
+FEWEST: Final = 5
+"""Cells of that grid along a side, at least."""
 
 LADDER: Final = (2, 3, 4, 5, 6, 8, 10)
 """Cell counts of the grids, in multiples of base counts."""
@@ -84,7 +87,8 @@ class Case(Rows):
         waves = self.k / (2.0 * np.pi)
         sides = np.stack([self.plate_width, self.plate_length]) * waves
         tops = np.array(LADDER)[list(FIRST)]
-        counts = np.maximum(np.ceil(DENSITY * sides / tops[:, None, None] - 1e-9), 1.0)
+        cells = np.maximum(DENSITY * sides, FEWEST)
+        counts = np.ceil(cells / tops[:, None, None] - 1e-9)
         choice = (counts.prod(axis=1).T * tops**2).argmin(axis=1)
         base_s, base_z = counts[choice, :, np.arange(waves.size)].T
         first, top = np.array(FIRST)[choice], tops[choice]

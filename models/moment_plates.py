@@ -191,9 +191,7 @@ def _fold(n_s: int, n_z: int, zz: WaveArray, zs: WaveArray, ss: WaveArray) -> Wa
     def place(i: slice, j: slice) -> WaveArray:
         """Return a part of the matrix as (n, s, row, s', row')."""
         part = matrix[:, i, j]
-        lengths = (size, part.shape[1] // rows, rows, part.shape[2] // rows, rows)
-        each, down, right = part.strides
-        return as_strided(part, lengths, (each, rows * down, down, rows * right, right))
+        return part.reshape(size, part.shape[1] // rows, rows, -1, rows)
 
     def spread(along: WaveArray, first: int, step: int) -> WaveArray:
         """Return along[..., first + step·row + row'] as (n, s, row, s', row')."""
