@@ -22,6 +22,7 @@ from optim.requirements import (
 from optim.schema import DesignFile, parse
 from optim.toml_text import quoted
 from optim.units import from_file, to_file
+from optim.values import title_of
 
 __all__ = ["Design", "read_design", "write_design"]
 
@@ -73,7 +74,7 @@ def read_design(path: Path) -> Design:
         for name, key in keys.items()
     }
     return Design(
-        title=file.title or path.stem,
+        title=file.title or title_of(path),
         reflectors=Reflectors(**dimensions),
         band=band_of(file.band),
         build=build_of(file.build),

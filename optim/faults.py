@@ -16,7 +16,7 @@ from dataclasses import dataclass
 from pathlib import Path
 from typing import Final, NoReturn
 
-__all__ = ["MAX_BYTES", "Fault", "Source", "SpecError", "dotted", "read_toml", "shown"]
+__all__ = ["MAX_BYTES", "Fault", "Source", "SpecError", "dotted", "printable", "read_toml", "shown"]
 
 MAX_BYTES: Final = 100_000
 """Largest file read, bytes; a requirements file with every key in it has three thousand."""
@@ -103,7 +103,7 @@ def read_toml(path: Path) -> Source:
     SpecError
         For a file that cannot be opened, is too long, is not UTF-8 or is not TOML.
     """
-    name = _printable(str(path))
+    name = printable(str(path))
 
     def refuse(given: str, allowed: str) -> NoReturn:
         raise SpecError([Fault(name, "", given, allowed)])
@@ -131,12 +131,13 @@ def read_toml(path: Path) -> Source:
     try:
         content = tomllib.loads(text)
     except tomllib.TOMLDecodeError as error:
-        refuse(f"text that is not TOML ({_printable(str(error))})", "TOML")
+        refuse(f"text that is not TOML ({printable(str(error))})", "TOML")
     except (ValueError, RecursionError):
         reason = "numbers too long or brackets too deep to read"
         refuse(reason, "TOML a person would write")
     return Source(name, text, hashlib.sha256(data).hexdigest(), content)
 
 
-def _printable(text: str) -> str:
+def printable(text: str) -> str:
+    """Return `text` on one line, with what cannot be printed written as Python would."""
     return "".join(c if c.isprintable() else ascii(c)[1:-1] for c in text)

@@ -17,7 +17,7 @@ import numpy as np
 
 from models import MODELS
 from optim.archive import Judged
-from optim.faults import Fault, SpecError
+from optim.faults import Fault, SpecError, printable
 from optim.journal import decode, encode
 from optim.requirements import Requirements, RunSettings, read_requirements
 from optim.result import Result
@@ -46,7 +46,7 @@ def write_outcome(folder: Path, result: Result, versions: Mapping[str, str]) -> 
     content = {
         "format": FORMAT,
         "title": requirements.title,
-        "file": requirements.path.name,
+        "file": printable(requirements.path.name),
         "spec_sha256": requirements.sha256,
         "run": asdict(requirements.run),
         "versions": dict(versions),

@@ -20,6 +20,7 @@ from optim.checks import spec_faults
 from optim.faults import Fault, Source, SpecError, read_toml
 from optim.schema import BandTable, BuildTable, RequireTable, SizeTable, SpecFile, parse
 from optim.units import FILE_KEYS, from_file
+from optim.values import title_of
 
 __all__ = [
     "Band",
@@ -235,7 +236,7 @@ def understood(source: Source, path: Path) -> Requirements:
     step = build.length_step_mm or nearest(LENGTH_STEPS_MM, wavelength_mm / 300.0)
     wind = None if spec.size.wind_load_n is None else spec.size.wind_load_n.wind_speed_m_s
     return Requirements(
-        title=spec.title or path.stem,
+        title=spec.title or title_of(path),
         band=band,
         limits=tuple(_limits(spec)),
         terms=Terms(

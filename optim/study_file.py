@@ -26,7 +26,7 @@ from optim.faults import Fault, Source, SpecError, dotted, read_toml, shown
 from optim.requirements import raise_faults, understood
 from optim.schema import SpecFile, Table, Title, parse
 from optim.toml_text import document, value_text
-from optim.values import count, near_miss
+from optim.values import count, near_miss, title_of
 
 __all__ = ["CASE", "SEED", "Factor", "Study", "StudyError", "StudyRun", "read_study"]
 
@@ -192,7 +192,7 @@ def read_study(path: Path) -> Study:
         factors.insert(0, Factor(CASE, tuple(cases)))
     repeats = file.repeats or 1
     study = Study(
-        title=file.title or path.stem,
+        title=file.title or title_of(path),
         path=path,
         spec=spec,
         sha256=source.sha256,

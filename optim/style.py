@@ -8,6 +8,7 @@ picture is made for. The same data gives the same bytes: no dates, no random ids
 from __future__ import annotations
 
 import textwrap
+import warnings
 from collections.abc import Iterator
 from contextlib import contextmanager
 from functools import lru_cache
@@ -110,8 +111,12 @@ _SETTINGS: Final = {
 
 @contextmanager
 def house_style() -> Iterator[None]:
-    """Draw under these settings whatever the user's own matplotlib settings are."""
-    with style.context(["default", _SETTINGS]):
+    """Draw under these settings whatever the user's own matplotlib settings are.
+
+    A letter that the type does not have is drawn as an empty box, without a word.
+    """
+    with style.context(["default", _SETTINGS]), warnings.catch_warnings():
+        warnings.filterwarnings("ignore", message=r"Glyph .* missing from font")
         yield
 
 

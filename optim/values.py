@@ -9,14 +9,18 @@ import difflib
 import math
 import unicodedata
 from collections.abc import Iterable
+from pathlib import Path
 from typing import Final, NoReturn
 
 from pydantic import BeforeValidator
 from pydantic_core import PydanticCustomError
 
-from optim.faults import shown
+from optim.faults import printable, shown
 
-__all__ = ["choice", "count", "mask", "near_miss", "number", "span", "title"]
+__all__ = ["choice", "count", "mask", "near_miss", "number", "span", "title", "title_of"]
+
+MOST_TITLE: Final = 200
+"""Characters of a title."""
 
 
 def _refuse(allowed: str) -> NoReturn:
@@ -73,9 +77,14 @@ def span(low: float, high: float) -> BeforeValidator:
 
 def title(value: object) -> str:
     """Allow one line of text."""
-    if isinstance(value, str) and len(value) <= 200 and not any(map(_controls, value)):
+    if isinstance(value, str) and len(value) <= MOST_TITLE and not any(map(_controls, value)):
         return value
-    _refuse("text on one line of at most 200 characters")
+    _refuse(f"text on one line of at most {MOST_TITLE} characters")
+
+
+def title_of(path: Path) -> str:
+    """Return what a file without a title is called: its name, as a title that is allowed."""
+    return printable(path.stem)[:MOST_TITLE].strip() or "untitled"
 
 
 def mask(value: object) -> tuple[tuple[float, float], ...]:

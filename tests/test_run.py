@@ -11,6 +11,7 @@ import pytest
 from models.geometry import DIMENSIONS
 from optim.cli import main
 from optim.designfile import read_design
+from optim.outcome import read_outcome
 from tests.search_specs import EASY, IMPOSSIBLE, write
 
 
@@ -195,6 +196,21 @@ def test_a_folder_that_cannot_be_written_is_told(
     (tmp_path / "run").mkdir(mode=0o500)
     assert command(write(tmp_path)) == 2
     assert "Permission denied" in capsys.readouterr().err
+
+
+@pytest.mark.parametrize(
+    "name", [b"\xff\n\x1b[31m\xe2\x80\xae.toml", b"x" * 240 + b".toml", b" .toml"]
+)
+def test_a_file_name_of_any_bytes_stands_in_for_a_title(tmp_path: Path, name: bytes) -> None:
+    spec = tmp_path / os.fsdecode(name)
+    spec.write_text(EASY.replace('title = "Easy"', ""))
+    assert command(spec, "--quiet") == 0
+    again, _ = read_outcome(tmp_path / "run")
+    title = again.requirements.title
+    assert 0 < len(title) <= 200
+    assert title.isprintable()
+    # The rules for a title hold for that of a design file, which must be read.
+    assert read_design(tmp_path / "run/recommended/smallest.toml").title.startswith(title[:180])
 
 
 def test_quiet_is_quiet(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:

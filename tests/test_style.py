@@ -43,6 +43,11 @@ def test_the_users_settings_are_left_alone() -> None:
     assert dict(mpl.rcParams) == before
 
 
+def test_letters_that_the_type_does_not_have_are_no_trouble(tmp_path: Path) -> None:
+    save(_picture("東京 \N{TELEVISION}"), tmp_path / "a.png")  # warnings are errors here
+    assert (tmp_path / "a.png").stat().st_size > 0
+
+
 def test_free_text_is_shown_as_it_stands() -> None:
     figure = _picture("Cost $5 to $9, 100 % \\alpha {x}_2 & <b>")
     assert "Cost $5 to $9, 100 % \\alpha {x}_2 & <b>" in {w.text for w in words_of(figure)}
