@@ -40,8 +40,9 @@ def finish(folder: Path, jobs: int = 1) -> Path:
     KeyboardInterrupt
         When interrupted, with the words how to go on.
     """
-    read_outcome(folder)
-    parts = [part for part in PARTS if part != "patterns" or not is_current(folder)]
+    result, _ = read_outcome(folder)
+    current = is_current(folder, len(result.shown()[0]))
+    parts = [part for part in PARTS if part != "patterns" or not current]
     try:
         with parallel_config("loky", inner_max_num_threads=1, initializer=_deaf_to_interrupts):
             Parallel(n_jobs=min(jobs, len(PARTS)), batch_size=1)(

@@ -62,7 +62,7 @@ def courses(journal: Path) -> list[Course]:
     if header is None:
         return []
     batches: dict[str, list[FloatArray]] = {}
-    for stage, numbers in read_batches(journal):
+    for stage, numbers in read_batches(journal, header):
         batches.setdefault(stage, []).append(numbers)
     models = {"scout": header.scout, "prove": header.prove}
     return [

@@ -16,7 +16,7 @@ import json
 import os
 from collections import deque
 from collections.abc import Iterator
-from contextlib import contextmanager
+from contextlib import contextmanager, suppress
 from dataclasses import asdict, dataclass, fields
 from io import FileIO
 from pathlib import Path
@@ -24,8 +24,10 @@ from types import TracebackType
 from typing import Any, Final, Self
 
 import numpy as np
+from pydantic import TypeAdapter, ValidationError
 
 from models.conventions import FloatArray
+from optim.faults import shown
 
 __all__ = [
     "FORMAT",
@@ -232,8 +234,14 @@ def read_header(path: Path) -> Header | None:
     return _header(path, lines[0]) if lines else None
 
 
-def read_batches(path: Path) -> Iterator[tuple[str, FloatArray]]:
+def read_batches(path: Path, header: Header) -> Iterator[tuple[str, FloatArray]]:
     """Yield stage and numbers (n, n_numbers) of every batch of the journal at `path`, in order.
+
+    Parameters
+    ----------
+    path : Path
+    header : Header
+        That of the journal, which names the numbers.
 
     Raises
     ------
@@ -243,7 +251,10 @@ def read_batches(path: Path) -> Iterator[tuple[str, FloatArray]]:
     lines, _ = _whole_lines(path)
     for number, batch in enumerate(lines[1:], start=2):
         try:
-            yield batch["stage"], decode(batch["numbers"], len(batch["designs"]))
+            stage, numbers = batch["stage"], decode(batch["numbers"], len(batch["designs"]))
+            if numbers.shape[1] != len(header.columns[stage]):
+                raise _damaged(path, number)
+            yield stage, numbers
         except (KeyError, TypeError, ValueError) as error:
             raise _damaged(path, number) from error
 
@@ -258,13 +269,14 @@ def _explained(path: Path, what: str) -> Iterator[None]:
 
 
 def _header(path: Path, entry: dict[str, Any]) -> Header:
-    if entry.get("format") != FORMAT or set(entry) != {field.name for field in fields(Header)}:
-        msg = (
-            f"{path}: no journal of this program's format {FORMAT} "
-            f"(format {entry.get('format')!r} found)"
-        )
-        raise JournalError(msg)
-    return Header(**entry)
+    if entry.get("format") == FORMAT and set(entry) == {field.name for field in fields(Header)}:
+        with suppress(ValidationError):
+            return TypeAdapter(Header).validate_python(entry)
+    msg = (
+        f"{path}: no journal of this program's format {FORMAT} "
+        f"(format {shown(entry.get('format'))} found)"
+    )
+    raise JournalError(msg)
 
 
 def _whole_lines(path: Path) -> tuple[list[dict[str, Any]], int]:
@@ -290,7 +302,7 @@ def _entry(line: bytes) -> dict[str, Any] | None:
         return None
     try:
         entry = json.loads(line)
-    except ValueError:
+    except (ValueError, RecursionError):
         return None
     return entry if isinstance(entry, dict) else None
 

@@ -71,7 +71,7 @@ def make_report(folder: Path) -> Path:
     result, versions = read_outcome(folder)
     # Charts are checked against their grammar by the tests, not once more in every report.
     with debug_mode(arg=False):
-        html = _html(folder, result, read_data(folder), versions)
+        html = _html(folder, result, read_data(folder, len(result.shown()[0])), versions)
     path = folder / FILE
     path.write_text(html, encoding="utf-8", newline="\n")
     return path

@@ -19,7 +19,7 @@ from threadpoolctl import threadpool_limits
 from models import Build, Figures, Reflectors, radiate
 from models.conventions import FloatArray, decibels
 from models.figures import figures_of_merit
-from models.pattern import Pattern
+from models.pattern import CUT_ANGLES, Pattern
 from optim.faults import Fault, SpecError
 from optim.margins import Judge
 from optim.outcome import FILE as FOUND
@@ -42,6 +42,9 @@ CHUNK: Final = 25
 """Designs solved at a time; not to depend on the number of workers."""
 
 FLOOR_DB: Final = -60.0
+LARGEST: Final = 1e12
+"""No number in the file comes near it."""
+
 MOST_POINTS: Final = 5
 """Frequencies of the band curves."""
 
@@ -117,8 +120,8 @@ def write_data(folder: Path, content: dict[str, Any]) -> None:
     (folder / FILE).write_text(text + "\n", encoding="utf-8")
 
 
-def read_data(folder: Path) -> dict[str, Any]:
-    """Return the numbers kept in `folder`.
+def read_data(folder: Path, designs: int) -> dict[str, Any]:
+    """Return the numbers kept in `folder` of so many `designs`.
 
     Raises
     ------
@@ -126,27 +129,52 @@ def read_data(folder: Path) -> dict[str, Any]:
         For a file that is missing or damaged, or belongs to other designs.
     """
     path = folder / FILE
-    given, content = "a damaged file", None
+    given = "a damaged file"
     try:
         content = json.loads(path.read_text(encoding="utf-8"))
         if content["found_sha256"] != _mark(folder):
-            given, content = "a file of other designs", None
+            given = "a file of other designs"
+        elif _is_whole(content, designs):
+            return dict(content)
     except FileNotFoundError:
         given = "no file"
-    except (KeyError, TypeError, ValueError):
-        content = None
-    if not isinstance(content, dict):
-        raise SpecError([Fault(str(path), "", given, "what apexfront report writes")])
-    return content
+    except (KeyError, TypeError, ValueError, RecursionError):
+        pass
+    raise SpecError([Fault(str(path), "", given, "what apexfront report writes")])
 
 
-def is_current(folder: Path) -> bool:
-    """Return whether `folder` holds numbers of the designs in it."""
+def is_current(folder: Path, designs: int) -> bool:
+    """Return whether `folder` holds the numbers of the `designs` found there."""
     try:
-        read_data(folder)
+        read_data(folder, designs)
     except SpecError:
         return False
     return True
+
+
+def _is_whole(content: dict[str, Any], designs: int) -> bool:
+    """Return whether every number that the report reads is there; KeyError, TypeError if not."""
+    places = len(content["mhz"])
+    tables = [
+        ([[content["centre_mhz"], *content["mhz"]]], (1, 1 + places)),
+        *((content[f"{plane}_tenths_db"], (designs, CUT_ANGLES.size)) for plane in "he"),
+        *((content["band"][name], (designs, places)) for name in BAND_FIGURES if designs),
+        *((content["scout"][name], (designs,)) for name in BAND_FIGURES if content["scout"]),
+    ]
+    return None not in tables[0][0][0] and all(_is_table(*table) for table in tables)
+
+
+def _is_table(value: Any, shape: tuple[int, ...]) -> bool:
+    """Return whether `value` is nested lists of this shape with numbers, or None, in them."""
+    if not shape:
+        number = isinstance(value, int | float) and not isinstance(value, bool)
+        return value is None or (number and abs(value) < LARGEST)
+    size, *rest = shape
+    return (
+        isinstance(value, list)
+        and len(value) == size
+        and all(_is_table(inner, tuple(rest)) for inner in value)
+    )
 
 
 def _mark(folder: Path) -> str:

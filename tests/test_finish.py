@@ -43,6 +43,31 @@ def test_the_command_makes_the_same_again(folder: Path, capsys: pytest.CaptureFi
     assert contents(folder) == before
 
 
+def test_patterns_edited_by_hand_are_made_again(
+    folder: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    monkeypatch.setattr("optim.finish.PARTS", ("patterns",))
+    before = contents(folder)
+    (folder / "patterns.json").write_bytes(before["patterns.json"].replace(b"[", b"[null,", 4))
+    assert main(["report", str(folder)]) == 0
+    assert contents(folder) == before
+
+
+@pytest.mark.parametrize("name", ["found.json", "journal.jsonl", "requirements.toml"])
+def test_damaged_data_is_one_message(
+    folder: Path, capsys: pytest.CaptureFixture[str], name: str
+) -> None:
+    before = (folder / name).read_bytes()
+    try:
+        (folder / name).write_bytes(before[:80] + b"\n" + before[90:])
+        assert main(["report", str(folder)]) == 2
+    finally:
+        (folder / name).write_bytes(before)
+    told = capsys.readouterr().err.splitlines()
+    assert f"{folder / name}: " in told[0]
+    assert len(told) == 1
+
+
 def test_an_interrupt_tells_how_to_go_on(
     folder: Path, capsys: pytest.CaptureFixture[str], monkeypatch: pytest.MonkeyPatch
 ) -> None:
@@ -50,12 +75,12 @@ def test_an_interrupt_tells_how_to_go_on(
         raise KeyboardInterrupt
 
     monkeypatch.setattr("optim.finish.make_report", interrupted)
+    monkeypatch.setattr("optim.finish.PARTS", ("patterns",))
     before = contents(folder)
     assert main(["report", str(folder)]) == 130
     (told,) = capsys.readouterr().err.splitlines()
-    assert told.startswith("interrupted; what the search found is saved. Go on with: apexfront")
-    monkeypatch.undo()
-    assert main(told.partition("apexfront ")[2].split()) == 0
+    assert told.startswith("interrupted; what the search found is saved. Go on with:")
+    assert told.endswith(f" apexfront report {folder}")
     assert contents(folder) == before
 
 

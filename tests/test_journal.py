@@ -23,7 +23,7 @@ HEADER = Header(
     scout="image",
     prove="none",
     versions={"apexfront": "0.1.0", "numpy": np.__version__},
-    columns={"image": ["objective", "margin"]},
+    columns={"scout": ["goal gain", "margin gain"], "check": ["goal gain", "margin gain"]},
 )
 BATCHES = [
     ("scout", np.array([[1.0, 0.1], [2.0, 1 / 3]]), np.array([[math.pi, -0.0], [1e-300, 5e-324]])),
@@ -220,11 +220,11 @@ def test_header_can_be_read_alone(tmp_path: Path) -> None:
 def test_batches_can_be_read_without_a_search(tmp_path: Path) -> None:
     path = tmp_path / "journal.jsonl"
     fill(path, BATCHES)
-    found = list(read_batches(path))
+    found = list(read_batches(path, HEADER))
     assert [stage for stage, _ in found] == ["scout", "scout", "check"]
     for (_, numbers), (_, _, asked) in zip(found, BATCHES, strict=True):
         assert numbers.tobytes() == asked.tobytes()
     with path.open("a") as file:
         file.write('{"stage":"scout"}\n')
     with pytest.raises(JournalError, match="line 5 is damaged"):
-        list(read_batches(path))
+        list(read_batches(path, HEADER))

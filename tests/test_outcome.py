@@ -8,6 +8,7 @@ import numpy as np
 import pytest
 
 from optim.faults import SpecError
+from optim.journal import decode, encode
 from optim.outcome import FILE, REQUIREMENTS, read_outcome, write_outcome
 from optim.run import Options, run
 from optim.tolerance import Influence, Spread
@@ -54,11 +55,93 @@ def test_damaged_files_are_told(tmp_path: Path, text: str) -> None:
         read_outcome(tmp_path)
 
 
-def test_a_file_without_its_versions_is_damaged(tmp_path: Path) -> None:
-    folder = tmp_path / "run"
-    run(write(tmp_path), Options(out=folder, jobs=1, quiet=True, seed=3))
-    content = json.loads((folder / FILE).read_text(encoding="utf-8"))
-    del content["versions"]
-    (folder / FILE).write_text(json.dumps(content), encoding="utf-8")
-    with pytest.raises(SpecError, match="a damaged file"):
-        read_outcome(folder)
+@pytest.fixture(scope="module")
+def folder(tmp_path_factory: pytest.TempPathFactory) -> Path:
+    place = tmp_path_factory.mktemp("run")
+    text = EASY.replace("[goals]", "[tolerance]\nspacing_mm = 1\n[goals]")
+    run(write(place, text), Options(out=place / "run", jobs=1, quiet=True, seed=3))
+    return place / "run"
+
+
+@pytest.mark.parametrize(
+    ("path", "value"),
+    [
+        ("versions", ...),
+        ("versions", {"numpy": 2}),
+        ("title", "two\nlines"),
+        ("file", 3),
+        ("run/scout", "guess"),
+        ("run/prove", ["image"]),
+        ("run/seed", "one"),
+        ("model", "guess"),
+        ("evaluations", {"image": -1}),
+        ("evaluations", "many"),
+        ("parts/front", ...),
+        ("parts/front/rows", 7),
+        ("parts/front/columns/margins", 7),
+        ("parts/front/columns", {}),
+        ("parts/front/numbers", "AAAA"),
+        ("parts/nearest/numbers", None),
+        ("spreads/0", ...),
+        ("spreads/0/high", ""),
+        ("spreads/0/high", 1e999),
+        ("spreads/0/method", "guess"),
+        ("spreads/0/influences", {}),
+        ("spreads/0/influences/spacing/share", None),
+        ("spreads/0/reach", "?"),
+    ],
+)
+def test_hand_edited_files_are_told(folder: Path, path: str, value: object) -> None:
+    before = (folder / FILE).read_bytes()
+    content = json.loads(before)
+    *way, last = (int(key) if key.isdigit() else key for key in path.split("/"))
+    node = content
+    for key in way:
+        node = node[key]
+    if value is ...:
+        del node[last]
+    else:
+        node[last] = value
+    read_outcome(folder)
+    try:
+        (folder / FILE).write_text(json.dumps(content), encoding="utf-8")
+        with pytest.raises(SpecError, match=r"found\.json: a damaged file") as told:
+            read_outcome(folder)
+        assert "\n" not in str(told.value)
+    finally:
+        (folder / FILE).write_bytes(before)
+
+
+@pytest.mark.parametrize(("column", "number"), [(0, np.nan), (1, -0.3), (2, 1e200), (7, np.inf)])
+def test_numbers_that_no_search_finds_are_told(folder: Path, column: int, number: float) -> None:
+    before = (folder / FILE).read_bytes()
+    content = json.loads(before)
+    front = content["parts"]["front"]
+    matrix = decode(front["numbers"], front["rows"])
+    matrix[-1, column] = number
+    front["numbers"] = encode(matrix)
+    try:
+        (folder / FILE).write_text(json.dumps(content), encoding="utf-8")
+        with pytest.raises(SpecError, match=r"found\.json: a damaged file"):
+            read_outcome(folder)
+    finally:
+        (folder / FILE).write_bytes(before)
+
+
+def test_requirements_changed_since_the_search_are_told(folder: Path) -> None:
+    path = folder / REQUIREMENTS
+    before = path.read_bytes()
+    try:
+        path.write_text(before.decode().replace("min = 11", "min = 12"))
+        with pytest.raises(SpecError, match=r"requirements\.toml: a file changed since"):
+            read_outcome(folder)
+    finally:
+        path.write_bytes(before)
+
+
+def test_a_mark_before_the_text_is_no_change(tmp_path: Path) -> None:
+    spec = write(tmp_path)
+    spec.write_bytes(b"\xef\xbb\xbf" + spec.read_bytes())
+    result = run(spec, Options(out=tmp_path / "run", jobs=1, quiet=True))
+    back, _ = read_outcome(tmp_path / "run")
+    assert back.requirements.sha256 == result.requirements.sha256

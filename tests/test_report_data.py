@@ -3,6 +3,7 @@
 import json
 from dataclasses import replace
 from pathlib import Path
+from typing import Any
 
 import numpy as np
 import pytest
@@ -69,24 +70,77 @@ def test_points_reach_from_edge_to_edge(band: Band, megahertz: list[float]) -> N
     assert (shown_points(band) / 1e6).tolist() == pytest.approx(megahertz)
 
 
-@pytest.mark.parametrize("text", ["", "[1]", "{", "{}"])
+def changed(tree: Any, path: tuple[str | int, ...], value: object) -> Any:
+    """Change what lies at `path` in `tree`, an ellipsis takes it out; return the tree."""
+    *way, last = path
+    node = tree
+    for key in way:
+        node = node[key]
+    if value is ...:
+        del node[last]
+    else:
+        node[last] = value
+    return tree
+
+
+@pytest.fixture
+def kept(tmp_path: Path, result: Result) -> tuple[Path, int]:
+    """A folder with numbers in it, and how many designs they are of."""
+    (tmp_path / FOUND).write_text("{}")
+    write_data(tmp_path, compute(result))
+    return tmp_path, len(result.found.front)
+
+
+@pytest.mark.parametrize("text", ["", "[1]", "{", "{}", "[" * 100_000, "\0"])
 def test_damaged_files_are_told(tmp_path: Path, text: str) -> None:
     (tmp_path / FOUND).write_text("{}")
     with pytest.raises(SpecError, match="no file"):
-        read_data(tmp_path)
+        read_data(tmp_path, 1)
     (tmp_path / FILE).write_text(text)
     with pytest.raises(SpecError, match="damaged"):
-        read_data(tmp_path)
+        read_data(tmp_path, 1)
 
 
-def test_numbers_of_other_designs_are_refused(tmp_path: Path) -> None:
-    (tmp_path / FOUND).write_text("{}")
-    write_data(tmp_path, {"mhz": [1.0]})
-    assert read_data(tmp_path)["mhz"] == [1.0]
-    (tmp_path / FOUND).write_text('{"format": 1}')
-    assert not is_current(tmp_path)
+@pytest.mark.parametrize(
+    ("path", "value"),
+    [
+        (("mhz",), ...),
+        (("mhz",), []),
+        (("mhz", 0), None),
+        (("centre_mhz",), "430"),
+        (("h_tenths_db",), {}),
+        (("h_tenths_db", 0), ...),
+        (("e_tenths_db", 0, 90), ...),
+        (("e_tenths_db", 0, 3), "x"),
+        (("band",), {}),
+        (("band",), 3),
+        (("band", "gain_dbi", 0), [1.0]),
+        (("band", "vswr", 0, 0), True),
+        (("band", "gain_dbi", 0, 0), float("nan")),
+        (("band", "gain_dbi", 0, 0), 10**400),
+        (("scout",), [1]),
+        (("scout",), {"gain_dbi": [1.0]}),
+    ],
+)
+def test_hand_edited_files_are_told(
+    kept: tuple[Path, int], path: tuple[str | int, ...], value: object
+) -> None:
+    folder, designs = kept
+    assert is_current(folder, designs)
+    assert not is_current(folder, designs + 1)
+    content = changed(json.loads((folder / FILE).read_text()), path, value)
+    (folder / FILE).write_text(json.dumps(content))
+    assert not is_current(folder, designs)
+    with pytest.raises(SpecError, match="a damaged file"):
+        read_data(folder, designs)
+
+
+def test_numbers_of_other_designs_are_refused(kept: tuple[Path, int]) -> None:
+    folder, designs = kept
+    (folder / FOUND).write_text('{"format": 1}')
+    assert not is_current(folder, designs)
     with pytest.raises(SpecError, match="other designs"):
-        read_data(tmp_path)
+        read_data(folder, designs)
 
 
 def test_file_holds_no_number_that_json_has_not(result: Result) -> None:
