@@ -33,7 +33,7 @@ __all__ = ["ENOUGH_DB", "VOUCHED_DB", "Feed", "Settled", "radiate", "settle"]
 Feed = Literal["solved", "sinusoidal"]
 """The dipole's current: solved with the plates, or imposed."""
 
-MOST_CELLS: Final = 4000
+MOST_CELLS: Final = 2500
 """Cells beyond which no finer grid is tried."""
 
 ENOUGH_DB: Final = 0.05
