@@ -14,7 +14,7 @@ import numpy as np
 
 from models.conventions import FloatArray
 
-__all__ = ["Archive", "Judged", "diverse", "nondominated"]
+__all__ = ["Archive", "BoolArray", "IntArray", "Judged", "diverse", "nondominated"]
 
 IntArray = np.ndarray[tuple[int, ...], np.dtype[np.intp]]
 BoolArray = np.ndarray[tuple[int, ...], np.dtype[np.bool_]]
@@ -64,6 +64,12 @@ class Judged:
         """Return no designs, with `sizes` columns of numbers."""
         return cls.from_numbers(np.empty((0, n_var)), np.empty((0, sum(sizes))), sizes)
 
+    def replaced(self, rows: IntArray, others: Judged) -> Judged:
+        """Return the designs with `others` in the place of `rows`."""
+        order = np.arange(len(self))
+        order[rows] = len(self) + np.arange(len(rows))
+        return Judged.concatenate([self, others])[order]
+
     def numbers(self) -> FloatArray:
         """Return everything but the designs as one matrix, (n, n_numbers)."""
         return np.hstack([getattr(self, field.name) for field in fields(self)[1:]])
@@ -109,6 +115,8 @@ class Archive:
 
     Attributes
     ----------
+    all : Judged
+        Everything judged so far.
     front : Judged
         The feasible designs that no feasible design beats.
     feasible : int
@@ -118,7 +126,7 @@ class Archive:
     """
 
     def __init__(self, none: Judged) -> None:
-        self._parts = [none]
+        self.all = none
         self._places: dict[bytes, int] = {}
         self.front = none
         self.feasible = 0
@@ -133,25 +141,20 @@ class Archive:
         return key in self._places
 
     def add(self, judged: Judged) -> None:
-        """Take in designs that are new."""
-        for key in judged.keys:
-            self._places[key] = len(self._places)
-        self._parts.append(judged)
-        self.feasible += int(judged.feasible.sum())
-        self.least_violation = min(self.least_violation, float(judged.total_violation.min()))
+        """Take in designs; those known already are replaced, and are none of the front."""
+        places = [self._places.setdefault(key, len(self._places)) for key in judged.keys]
+        before = self.all
+        order = np.arange(len(self._places))
+        order[places] = len(before) + np.arange(len(judged))
+        self.all = everything = Judged.concatenate([before, judged])[order]
+        self.feasible = int(everything.feasible.sum())
+        self.least_violation = float(everything.total_violation.min(initial=np.inf))
         rivals = Judged.concatenate([self.front, judged[judged.feasible]])
         self.front = rivals[nondominated(rivals.objectives)]
 
     def find(self, keys: list[bytes]) -> Judged:
         """Return the designs whose rows have the bytes `keys`; each must be known."""
         return self.all[[self._places[key] for key in keys]]
-
-    @property
-    def all(self) -> Judged:
-        """Everything judged so far."""
-        if len(self._parts) > 1:
-            self._parts = [Judged.concatenate(self._parts)]
-        return self._parts[0]
 
 
 def nondominated(objectives: FloatArray) -> IntArray:

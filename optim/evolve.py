@@ -59,12 +59,13 @@ def evolve(
         n_goals=view(referee.archive.all)[0].shape[1],
         rng=rng,
     )
+    holds = None if view is whole else lambda some: view(some)[1] <= 0.0
     with progress.stage(f"{referee.stage} ({referee.model})", generations + 1) as told:
         for _ in range(generations + 1):
             asked = algorithm.ask()
             if asked is None:
                 return
-            judged = referee.judge(asked.get("X"), lambda some: view(some)[1] <= 0.0)
+            judged = referee.judge(asked.get("X"), holds)
             objectives, violation = view(judged)
             asked.set("F", objectives, "G", violation[:, None])
             algorithm.tell(infills=asked)

@@ -8,7 +8,7 @@ import numpy as np
 
 from models import Figures
 from models.conventions import FloatArray
-from optim.archive import Archive, Judged
+from optim.archive import Archive, BoolArray, Judged
 from optim.evaluate import Evaluator
 from optim.journal import Journal
 from optim.margins import Judge
@@ -16,7 +16,7 @@ from optim.space import DesignSpace
 
 __all__ = ["Referee", "columns", "worse_of"]
 
-Holds = Callable[[Judged], np.ndarray]
+Holds = Callable[[Judged], BoolArray]
 
 
 class Referee:
@@ -33,8 +33,9 @@ class Referee:
     frequencies : (n_freq,)
         Hz.
     further : (n_further,), optional
-        Frequencies at which only those designs are judged that hold at the first ones, Hz. What a
-        design that fails is judged by is then a lower bound of what it misses.
+        Frequencies at which only those designs are judged that show promise at the first ones, Hz.
+        More frequencies only make a design worse: what the others are judged by is a lower bound
+        of what they miss, and nothing else would put them on the front.
     journal : Journal, optional
         Left out: nothing is recorded.
     """
@@ -60,6 +61,7 @@ class Referee:
         self._frequencies = frequencies
         self._further = np.empty(0) if further is None else further
         self._journal = journal
+        self._whole: set[bytes] = set()
 
     @property
     def sizes(self) -> tuple[int, int, int, int]:
@@ -79,34 +81,50 @@ class Referee:
         ----------
         designs : (n, n_var)
         holds : callable, optional
-            Which judged designs, (n,), are worth the further frequencies; the feasible ones if
-            left out.
+            Which judged designs, (n,), are worth the further frequencies; if left out, those that
+            are feasible and that no design of the front beats.
         """
+        worthy = holds or self._promising
         keys = [row.tobytes() for row in designs]
         first = {key: i for i, key in reversed(list(enumerate(keys)))}
         new = sorted(i for key, i in first.items() if key not in self.archive)
-        if new:
-            self.archive.add(self._evaluated(designs[new], holds))
+        known = self.archive.find([key for key in first if key in self.archive])
+        short = known[worthy(known) & ~self.whole(known)]
+        if len(new) or len(short):
+            self.archive.add(self._evaluated(designs[new], short, worthy))
         return self.archive.find(keys)
 
-    def _evaluated(self, designs: FloatArray, worthy: Holds | None) -> Judged:
+    def whole(self, judged: Judged) -> BoolArray:
+        """Return which of these designs have been judged at all frequencies, (n,)."""
+        return np.array([key in self._whole for key in judged.keys], dtype=bool)
+
+    def _promising(self, judged: Judged) -> BoolArray:
+        front = self.archive.front.objectives[:, None, :]
+        return judged.feasible & ~(front <= judged.objectives).all(axis=2).any(axis=0)
+
+    def _evaluated(self, new: FloatArray, short: Judged, worthy: Holds) -> Judged:
+        """Return new designs judged, and those that were judged `short` judged at the rest."""
+        designs = np.concatenate([new, short.designs])
         journal = self._journal
         recorded = None if journal is None else journal.replay(self.stage, designs)
-        if recorded is not None:
-            return Judged.from_numbers(designs, recorded, self.sizes)
-        judged = self._judged(designs, self._frequencies)
-        holds = np.flatnonzero(judged.feasible if worthy is None else worthy(judged))
-        if len(holds) and len(self._further):
-            more = self._judged(designs[holds], self._further)
-            whole = worse_of(self.rules, judged[holds], more)
-            order = np.arange(len(judged))
-            order[holds] = len(judged) + np.arange(len(holds))
-            judged = Judged.concatenate([judged, whole])[order]
-        if journal is not None:
-            journal.append(self.stage, designs, judged.numbers())
+        if recorded is None:
+            judged = Judged.concatenate([self._judged(new, self._frequencies), short])
+            whole = np.append(worthy(judged[: len(new)]), np.ones(len(short), dtype=bool))
+            if len(self._further):
+                rows = np.flatnonzero(whole)
+                more = self._judged(designs[rows], self._further)
+                judged = judged.replaced(rows, worse_of(self.rules, judged[rows], more))
+            recorded = np.column_stack([judged.numbers(), whole])
+            if journal is not None:
+                journal.append(self.stage, designs, recorded)
+        judged = Judged.from_numbers(designs, recorded[:, :-1], self.sizes)
+        whole = recorded[:, -1].astype(bool) | (len(self._further) == 0)
+        self._whole.update(key for key, full in zip(judged.keys, whole, strict=True) if full)
         return judged
 
     def _judged(self, designs: FloatArray, frequencies: FloatArray) -> Judged:
+        if not len(designs):
+            return self.archive.all[:0]
         reflectors, rules = self.space.reflectors(designs), self.rules
         figures = self._evaluator.figures(reflectors, frequencies)
         return Judged(
@@ -130,10 +148,11 @@ def worse_of(rules: Judge, first: Judged, second: Judged) -> Judged:
 
 
 def columns(rules: Judge) -> list[str]:
-    """Return the names of the numbers of a judged design, in order."""
+    """Return the names of the numbers that are recorded of a judged design, in order."""
     return [
         *(f"goal {goal.name}" for goal in rules.requirements.goals),
         *(f"margin {limit.label}" for limit in rules.limits),
         *(f"violation {limit.label}" for limit in rules.constraints),
         *(f"worst {name}" for name in Figures.names()),
+        "at all frequencies",
     ]

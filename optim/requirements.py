@@ -73,22 +73,17 @@ class Band:
         """Return the band on a grid twice as fine."""
         return Band(self.low_hz, self.high_hz, 2 * self.points - 1)
 
-    def split(self) -> tuple[FloatArray, FloatArray]:
-        """Return the band points as those to look at first, and the others, Hz.
+    def split(self) -> tuple[FloatArray, FloatArray, FloatArray]:
+        """Return the band points to look at first, the others, and those between them, Hz.
 
-        Both edges and the middle come first; a design that fails there needs no more.
+        Both edges and the middle come first; a design that fails there needs no more. Together
+        they are a grid twice as fine.
         """
-        first = np.zeros(self.points, dtype=bool)
-        first[[0, self.points // 2, -1]] = True
-        points = self.frequencies()
-        return points[first], points[~first]
-
-    def unseen(self) -> FloatArray:
-        """Return the points of the finer grid that are not among the first of this one, Hz."""
-        fine = self.refined()
-        first = np.zeros(fine.points, dtype=bool)
+        points = self.refined().frequencies()
+        asked = np.arange(points.size) % 2 == 0
+        first = np.zeros(points.size, dtype=bool)
         first[[0, 2 * (self.points // 2), -1]] = True
-        return fine.frequencies()[~first]
+        return points[first], points[asked & ~first], points[~asked]
 
     @property
     def middle_hz(self) -> float:

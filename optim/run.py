@@ -201,13 +201,10 @@ def header_of(requirements: Requirements, space: DesignSpace) -> Header:
     settings = requirements.run
     requirements = bred(requirements)
     asked = Judge(requirements)
-    stages = {"scout": asked, "check": asked}
+    stages = {"scout": asked}
     if settings.prove:
-        stages = {
-            "scout": Judge(scouted(requirements, space, settings.scout)),
-            "prove": asked,
-            "check": asked,
-        }
+        scouting = Judge(scouted(requirements, space, settings.scout))
+        stages = {"scout": scouting, "prove": asked}
     return Header(
         seed=settings.seed,
         spec_sha256=requirements.sha256,

@@ -1,10 +1,10 @@
-"""The search: scout with a cheap model, prove with a true one, check on a finer grid.
+"""The search: scout with a cheap model, prove with a true one on a finer grid.
 
 The scout's model looks at the whole space. What it finds about the requirements, those tightened
 and those relaxed by a step of margin included, is handed to the proving model, and the search goes
-on there for as long as the front moves. The front is then judged on a band grid twice as fine,
-and what fails there makes room for the next best. Where nothing meets the requirements, each limit
-in the way is taken down in turn, to see what lies behind it.
+on there for as long as the front moves. What is on the front holds on a band grid twice as fine as
+asked for. Where nothing meets the requirements, each limit in the way is taken down in turn, to see
+what lies behind it.
 """
 
 from __future__ import annotations
@@ -27,7 +27,8 @@ from optim.margins import Judge
 from optim.precheck import blind_spots
 from optim.progress import Progress
 from optim.recommend import front_rows, nearest_rows, relaxation_rows, sorted_rows
-from optim.referee import Referee, worse_of
+from optim.referee import Referee
+from optim.refine import refine
 from optim.requirements import Goal, Requirements
 from optim.robust import bred, decide, reach, tolerated
 from optim.space import DesignSpace
@@ -42,11 +43,11 @@ SCOUT_PATIENCE: Final = 12
 PROVE_PATIENCE: Final = 8
 """Generations within which a front must move for the search to go on."""
 
-PROVE_GENERATIONS: Final = 30
+PROVE_GENERATIONS: Final = 14
 LEVELS: Final = (-1.0, -0.5, 0.0, 0.5, 1.0)
 """Violations, in steps of margin, about which designs are handed from scout to prover."""
 
-CHECK_ROUNDS: Final = 12
+SETTLING_ROUNDS: Final = 12
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)
@@ -105,14 +106,14 @@ def search(
     asked, requirements = requirements, bred(requirements)
     run, judge = requirements.run, Judge(requirements)
     rng = np.random.default_rng(run.seed)
-    (first, further), unseen = requirements.band.split(), requirements.band.unseen()
+    first, further, finer = requirements.band.split()
+    rest = np.concatenate([further, finer])
     decider = prove or scout
-    checking = Referee("check", space, judge, decider, unseen, journal)
-    scouting = deciding = Referee("scout", space, judge, scout, first, journal, further=further)
+    scouting = deciding = Referee("scout", space, judge, scout, first, journal, further=rest)
     if prove is not None:
         scout_judge = Judge(scouted(requirements, space, scout.model))
         scouting = Referee("scout", space, scout_judge, scout, first, journal, further=further)
-        deciding = Referee("prove", space, judge, prove, first, journal, further=further)
+        deciding = Referee("prove", space, judge, prove, first, journal, further=rest)
     evolve(
         scouting,
         first_sample(space, FIRST_SAMPLE * run.population, rng),
@@ -126,8 +127,7 @@ def search(
     if prove is not None:
         if builds is not None and "yield" in {goal.name for goal in requirements.goals}:
             rules = Judge(requirements, reach(scouting.archive.all, builds))
-            deciding = Referee("prove", space, rules, prove, first, journal, further=further)
-            checking = Referee("check", space, rules, prove, unseen, journal)
+            deciding = Referee("prove", space, rules, prove, first, journal, further=rest)
         evolve(
             deciding,
             about_the_limits(scouting.archive, run.population),
@@ -137,17 +137,17 @@ def search(
             rng=rng,
             progress=progress,
         )
-    front = settled(deciding, checking, front_rows)
+    refine(deciding, rng=rng, progress=progress)
+    front = settled(deciding, front_rows)
     if not len(front):
         open_doors(requirements, scouting, deciding, rng, progress)
-        front = settled(deciding, checking, front_rows)
+        front = settled(deciding, front_rows)
     nearest = relaxed = front[:0]
     if not len(front):
-        nearest = settled(deciding, checking, nearest_rows)
-        relaxed = settled(deciding, checking, relaxation_rows)
-    stages = {scouting.stage: scouting, deciding.stage: deciding, checking.stage: checking}
+        nearest = settled(deciding, nearest_rows)
+        relaxed = settled(deciding, relaxation_rows)
     evaluations: dict[str, int] = {}
-    for stage in stages.values():
+    for stage in dict.fromkeys([scouting, deciding]):
         evaluations[stage.model] = evaluations.get(stage.model, 0) + len(stage.archive)
     spreads: dict[bytes, Spread] = {}
     if builds is not None:
@@ -191,34 +191,21 @@ def about_the_limits(archive: Archive, count: int) -> FloatArray:
     return judged.designs[rows]
 
 
-def settled(deciding: Referee, checking: Referee, pick: Callable[[Judged], IntArray]) -> Judged:
-    """Return the designs that `pick` takes, all of them judged on the fine grid.
+def settled(deciding: Referee, pick: Callable[[Judged], IntArray]) -> Judged:
+    """Return the designs that `pick` takes, all of them judged at all frequencies.
 
-    What it takes is checked at the points not seen yet, and it picks again with what that showed,
-    until nothing is new: a design that fails on the fine grid makes room for the next.
+    What it takes is judged at the rest of them, and it picks again with what that showed, until
+    nothing is new: a design that fails there makes room for the next.
     """
-    known = deciding.archive.all
-    if not len(deciding.rules.requirements.band.unseen()):
-        return known[pick(known)]
-    for _ in range(CHECK_ROUNDS):
-        known, _ = checked(deciding, checking)
+    for _ in range(SETTLING_ROUNDS):
+        known = deciding.archive.all
         chosen = known[pick(known)]
-        if all(key in checking.archive for key in chosen.keys):
+        if deciding.whole(chosen).all():
             return chosen
-        checking.judge(chosen.designs)
-    known, rows = checked(deciding, checking)
-    return known[rows][pick(known[rows])]
-
-
-def checked(deciding: Referee, checking: Referee) -> tuple[Judged, IntArray]:
-    """Return what is known, checked designs at the worse of both grids, and the rows of these."""
-    known, checks = deciding.archive.all, checking.archive.all
-    places = {key: place for place, key in enumerate(known.keys)}
-    rows = np.array([places[key] for key in checks.keys], dtype=np.intp)
-    whole = worse_of(deciding.rules, known[rows], checks)
-    order = np.arange(len(known))
-    order[rows] = len(known) + np.arange(len(rows))
-    return Judged.concatenate([known, whole])[order], np.sort(rows)
+        deciding.judge(chosen.designs, lambda judged: np.ones(len(judged), dtype=bool))
+    known = deciding.archive.all
+    known = known[deciding.whole(known)]
+    return known[pick(known)]
 
 
 def scouted(requirements: Requirements, space: DesignSpace, model: str) -> Requirements:
