@@ -5,6 +5,9 @@ uniform in z, so that only TM_z is excited. Fields are relative to the feed alon
 stand inside or outside the circle ρ = w. The dipole's current is sinusoidal. Plates conduct
 perfectly (efficiency 1). Cost grows with the cube of the width.
 
+`line_source` and `line_source_directivity` are the problem in two dimensions, to compare with what
+is published on it.
+
 Source: Harrington, *Time-Harmonic Electromagnetic Fields* (1961), §5; the solution is that of
 `models.circle`.
 """

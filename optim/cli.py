@@ -303,11 +303,12 @@ def trade_off(
     quiet: Quiet = False,
 ) -> int:
     """Show how the figures move, and what each requirement costs in size."""
-    from optim.trade import Options, trade  # pymoo and matplotlib are slow to start
+    from optim.run import DEFAULT_FOLDER  # pymoo and matplotlib are slow to start
+    from optim.trade import Options, trade
     from optim.trade_files import page, write
 
-    found = trade(spec, Options(out=out, jobs=jobs, model=model, quiet=quiet, cluster=cluster))
-    folder = out or Path("runs") / f"{spec.stem}-trade"
+    folder = out or Path(DEFAULT_FOLDER) / f"{spec.stem}-trade"
+    found = trade(spec, Options(out=folder, jobs=jobs, model=model, quiet=quiet, cluster=cluster))
     files = write(folder, found)
     answer(page(found))
     if not quiet:

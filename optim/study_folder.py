@@ -22,6 +22,8 @@ from dataclasses import asdict, dataclass, field
 from pathlib import Path
 from typing import Any, Final
 
+from pydantic import TypeAdapter
+
 from optim.run import JOURNAL
 from optim.study_file import Study, StudyError
 
@@ -177,7 +179,10 @@ class StudyFolder:
         found = _object(self.run(number) / OUTCOME)
         if found is None or set(found) != set(Outcome.__dataclass_fields__):
             return None
-        return Outcome(**found)
+        with suppress(ValueError, KeyError):
+            outcome = TypeAdapter(Outcome).validate_python(found)
+            return outcome if outcome.area is None or outcome.area > 0.0 else None
+        return None
 
     def started(self, number: int) -> bool:
         """Return whether a run has a journal."""
@@ -250,6 +255,6 @@ def _locked(handle: int, kind: int) -> bool:
 def _object(path: Path) -> dict[str, Any] | None:
     try:
         found = json.loads(path.read_bytes())
-    except (FileNotFoundError, ValueError):
+    except (FileNotFoundError, ValueError, RecursionError):
         return None
     return found if isinstance(found, dict) else None

@@ -9,7 +9,9 @@ picture. Sizes are those of the first size among the goals, frontal area if ther
 from __future__ import annotations
 
 import csv
+import errno
 import json
+import os
 from collections.abc import Iterator
 from contextlib import suppress
 from dataclasses import dataclass, replace
@@ -31,7 +33,7 @@ from optim.progress import Progress
 from optim.recommend import front_rows, nearest_rows, roles, sorted_rows
 from optim.referee import Referee
 from optim.requirements import Goal, Requirements, read_requirements
-from optim.run import unjudged
+from optim.run import DEFAULT_FOLDER, unjudged
 from optim.search import FIRST_SAMPLE, first_sample
 from optim.space import DesignSpace
 from optim.trade_maps import POINTS, Map, chosen_pairs, map_of
@@ -60,7 +62,7 @@ class Options:
     Parameters
     ----------
     out : Path, optional
-        Folder of results; "runs/", the name of the file and "-trade" if left out.
+        Folder that the results are meant for, made if need be; a search finished in it is used.
     jobs : int, optional
         Worker processes; all cores if left out.
     model : str, optional
@@ -135,6 +137,8 @@ def trade(spec: Path, options: Options) -> Trade:
         For a requirements file that cannot be used, or a model that cannot judge it.
     ClusterError
         For a cluster that cannot be used, or that stopped working.
+    OSError
+        For a folder that cannot be made or written to.
     """
     asked = read_requirements(spec)
     space = DesignSpace.from_requirements(asked)
@@ -151,6 +155,8 @@ def trade(spec: Path, options: Options) -> Trade:
         Evaluator(requirements, model, options.jobs or cpu_count(), cluster=cluster) as evaluator,
         Progress(quiet=options.quiet) as progress,
     ):
+        if options.out is not None:
+            _make(options.out)
         judge = Judge(requirements)
         referee = Referee("trade", space, judge, evaluator, frequencies, None)
         start = [known_designs(folder, asked) for folder in _folders(spec, options)]
@@ -193,7 +199,7 @@ def trade(spec: Path, options: Options) -> Trade:
 def known_designs(folder: Path, asked: Requirements) -> FloatArray:
     """Return the front of a finished search of the same requirements, (n, 5); empty if none."""
     rows: list[list[float]] = []
-    with suppress(OSError, ValueError, KeyError, TypeError):
+    with suppress(OSError, ValueError, KeyError, TypeError, csv.Error):
         summary = json.loads((folder / "summary.json").read_text(encoding="utf-8"))
         if summary["spec_sha256"] == asked.sha256:
             with (folder / "front.csv").open(encoding="utf-8", newline="") as stream:
@@ -205,8 +211,15 @@ def known_designs(folder: Path, asked: Requirements) -> FloatArray:
     return np.asarray(designs[np.isfinite(designs).all(axis=1)])
 
 
+def _make(folder: Path) -> None:
+    """Make the folder of results, and see that it can be written to before the work is done."""
+    folder.mkdir(parents=True, exist_ok=True)
+    if not os.access(folder, os.W_OK):
+        raise PermissionError(errno.EACCES, os.strerror(errno.EACCES), str(folder))
+
+
 def _folders(spec: Path, options: Options) -> Iterator[Path]:
-    yield Path("runs") / spec.stem
+    yield Path(DEFAULT_FOLDER) / spec.stem
     if options.out is not None:
         yield options.out
 

@@ -16,10 +16,10 @@ TESTED_ELSEWHERE = {
     "models/ray_currents.py": "the currents whose radiation test_ray.py checks",
     "optim/analysis.py": "the object and table that test_cli.py reads",
     "optim/analysis_files.py": "the files that test_cli.py looks at",
-    "optim/checks.py": "what test_requirements.py and test_designfile.py refuse",
+    "optim/checks.py": "what test_refusals.py and test_designfile.py refuse",
     "optim/datasheet_plots.py": "the pictures of the pages that test_datasheet.py checks",
     "optim/drafting.py": "the pen of the drawings that test_drawing.py checks",
-    "optim/faults.py": "what test_requirements.py and test_designfile.py refuse",
+    "optim/faults.py": "what test_refusals.py and test_designfile.py refuse",
     "optim/overview.py": "the text that test_cli.py reads",
     "optim/report_page.py": "the words that test_report.py reads on the page",
     "optim/report_quantities.py": "the numbers that test_report.py compares with summary.json",
@@ -29,7 +29,7 @@ TESTED_ELSEWHERE = {
     "optim/tolerance_table.py": "rows and object that test_robust.py reads",
     "optim/trade_files.py": "files and words that test_trade.py reads",
     "optim/units.py": "round trips in test_designfile.py",
-    "optim/values.py": "what test_requirements.py refuses",
+    "optim/values.py": "what test_refusals.py refuses",
 }
 """Modules without a test file of their name, each with where its tests are."""
 

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import json
-from dataclasses import replace
+from dataclasses import asdict, replace
 from pathlib import Path
 
 import pytest
@@ -28,7 +28,24 @@ def test_outcomes_come_back(tmp_path: Path) -> None:
     assert replace(OUTCOME, smallest={}).area is None
 
 
-@pytest.mark.parametrize("content", ["", '{"status": "met"', "[]", '{"status": "met"}'])
+WHOLE = json.dumps(asdict(OUTCOME))
+
+
+@pytest.mark.parametrize(
+    "content",
+    [
+        "",
+        '{"status": "met"',
+        "[]",
+        '{"status": "met"}',
+        WHOLE.replace('"met"', "[1]"),
+        WHOLE.replace("2.5", '"long"'),
+        WHOLE.replace('"0.125"', '"small"'),
+        WHOLE.replace("frontal", "rear"),
+        WHOLE.replace("[[", "["),
+        "[" * 100_000,
+    ],
+)
 def test_what_is_no_outcome_is_none(tmp_path: Path, content: str) -> None:
     folder = StudyFolder(tmp_path)
     folder.run(1).mkdir(parents=True)
