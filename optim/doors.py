@@ -20,6 +20,7 @@ from optim.progress import Progress
 from optim.recommend import nearest_rows, relaxation_rows
 from optim.referee import Referee
 from optim.requirements import Requirements
+from optim.settle import settled
 from optim.space import DesignSpace
 
 __all__ = ["open_doors"]
@@ -43,8 +44,7 @@ def open_doors(
     In the way is what the nearest designs miss or meet by less than a step of margin. Without a
     limit the ranges derived from it open as well. Pairs are tried only where no single one helps.
     """
-    known = deciding.archive.all
-    nearest = known[nearest_rows(known)]
+    nearest = settled(deciding, nearest_rows)
     misses = nearest.violations[:, : nearest.margins.shape[1]].max(axis=0)
     worst_first = np.argsort(-misses, kind="stable")[:MOST_DOORS]
     in_the_way = [int(limit) for limit in worst_first if misses[limit] > -1.0]
@@ -53,7 +53,7 @@ def open_doors(
             asked = [deciding.labels[limit] for limit in limits]
             left = tuple(limit for limit in requirements.limits if limit.label not in asked)
             space = DesignSpace.from_requirements(replace(requirements, limits=left))
-            start = np.empty((0, known.designs.shape[1]))
+            start = nearest.designs[:0]
             for referee in dict.fromkeys([scouting, deciding]):
                 if not set(asked) <= set(referee.labels):
                     continue
@@ -71,9 +71,8 @@ def open_doors(
                     space=space,
                 )
                 start = behind(referee.archive.all, view, POPULATION)
-        judged = deciding.archive.all
-        rows = relaxation_rows(judged)
-        if len(rows) and (judged.margins[rows[0]] < 0.0).sum() <= together:
+        opened = settled(deciding, relaxation_rows)
+        if len(opened) and (opened.margins[0] < 0.0).sum() <= together:
             return
 
 

@@ -24,6 +24,7 @@ TESTED_ELSEWHERE = {
     "optim/report_page.py": "the words that test_report.py reads on the page",
     "optim/report_quantities.py": "the numbers that test_report.py compares with summary.json",
     "optim/schema.py": "what test_requirements.py and test_designfile.py read",
+    "optim/settle.py": "what test_doors.py and test_search.py end with",
     "optim/study_status.py": "the words that test_study.py reads while a study runs",
     "optim/study_table.py": "the tables that test_study.py reads",
     "optim/tolerance_table.py": "rows and object that test_robust.py reads",

@@ -1,14 +1,23 @@
 """Doors: what the search says about relaxing limits, against looking everywhere."""
 
 import json
+from dataclasses import replace
 from pathlib import Path
 
 import numpy as np
 import pytest
 
-from models import evaluate
+from models import Figures, Reflectors, evaluate
+from models.conventions import FloatArray
+from optim.doors import open_doors
+from optim.evaluate import Evaluator
+from optim.margins import Judge
+from optim.problem import View, door
+from optim.progress import Progress
+from optim.referee import Referee
 from optim.run import Options, run
-from tests.search_specs import IMPOSSIBLE, SMALL, write
+from optim.space import DesignSpace
+from tests.search_specs import IMPOSSIBLE, SMALL, read, write
 
 
 def test_relaxing_opens_the_door_as_far_as_exhaustion_does(tmp_path: Path) -> None:
@@ -62,3 +71,41 @@ def test_a_size_cap_that_cut_the_ranges_is_a_door_too(tmp_path: Path) -> None:
     assert depth > 230.0
     assert limit["to"] == pytest.approx(depth, abs=1.0)
     assert limit["to"] > depth - 1e-9
+
+
+class Notched(Evaluator):
+    """The image model with 30 dB less gain at one frequency."""
+
+    def figures(self, reflectors: Reflectors, frequencies: FloatArray) -> Figures:
+        figures = super().figures(reflectors, frequencies)
+        loss = np.where(np.isclose(frequencies, NOTCH), 30.0, 0.0)
+        return replace(figures, gain_dbi=figures.gain_dbi - loss)
+
+
+NOTCH = 425e6
+
+
+def test_doors_are_those_of_all_frequencies(
+    tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    asked = read(tmp_path)
+    space, rules = DesignSpace.from_requirements(asked), Judge(asked)
+    first, *rest = asked.band.split()
+    assert NOTCH not in first
+    deciding = Referee(
+        "scout", space, rules, Notched(asked, "image"), first, None, further=np.concatenate(rest)
+    )
+    # Gain and beamwidth of a 90° corner, at the edges and the middle met by more than a step.
+    deciding.judge(
+        np.array([[np.pi / 2, 0.3, 0.6, 0.7, 0.33]]), lambda judged: judged.violations[:, 0] > 0
+    )
+    tried: list[list[int]] = []
+
+    def noted(limits: list[int]) -> View:
+        tried.append(limits)
+        return door(limits)
+
+    monkeypatch.setattr("optim.doors.door", noted)
+    monkeypatch.setattr("optim.doors.evolve", lambda *_, **__: None)
+    open_doors(asked, deciding, deciding, np.random.default_rng(1), Progress(quiet=True))
+    assert tried == [[0]]
