@@ -174,7 +174,7 @@ class Judge:
         return np.asarray(measured.max(axis=1, initial=-MISSING))
 
     def _closeness(self, name: str, values: FloatArray) -> FloatArray:
-        margins = [_signed(limit, values) for limit in self.limits if limit.figure == name]
+        margins = [limit.margins(values) for limit in self.limits if limit.figure == name]
         return -np.minimum.reduce(margins) if margins else values
 
 
@@ -185,15 +185,11 @@ def _at(values: FloatArray, badness: FloatArray) -> FloatArray:
     return np.where(np.isnan(values).any(axis=1), np.nan, chosen)
 
 
-def _signed(limit: Limit, values: FloatArray) -> FloatArray:
-    return values - limit.value if limit.sense == "min" else limit.value - values
-
-
 def _margin(limit: Limit, sizes: dict[str, FloatArray], figures: Figures) -> FloatArray:
     if limit.figure in sizes:
-        margin = _signed(limit, sizes[limit.figure] / SIZES[limit.figure])
+        margin = limit.margins(sizes[limit.figure] / SIZES[limit.figure])
     else:
-        margin = _signed(limit, getattr(figures, limit.figure)).min(axis=1)
+        margin = limit.margins(getattr(figures, limit.figure)).min(axis=1)
     # Exactly on the limit is met, whatever the last bits of a sine say.
     margin = np.where(np.abs(margin) <= 1e-9 * max(1.0, abs(limit.value)), 0.0, margin)
     most = MISSING * limit.scale
