@@ -29,7 +29,10 @@ __all__ = ["CHUNK", "Evaluator"]
 Job = tuple[FloatArray, str, Build, Terms]
 
 CHUNK: Final = 25
-"""Designs a worker takes at a time."""
+"""Most designs a worker takes at a time."""
+
+WHOLE: Final = 16
+"""Fewer designs are not divided."""
 
 IDLE: Final = 60.0
 """Seconds after which workers without work end, also when this process was killed."""
@@ -83,7 +86,7 @@ class Evaluator:
     def figures(self, reflectors: Reflectors, frequencies: FloatArray) -> Figures:
         """Return the figures of n designs at n_freq frequencies (Hz), each (n, n_freq)."""
         designs = reflectors.matrix()
-        chunks = [designs[i : i + CHUNK] for i in range(0, len(designs), CHUNK)]
+        chunks = np.array_split(designs, chunk_count(len(designs)))
         job = (frequencies, self.model, self._build, self._terms)
         if self._cluster is not None:
             return Figures.concatenate(self._far(self._cluster, chunks, job))
@@ -120,6 +123,11 @@ class Evaluator:
                 pool = Parallel(n_jobs, batch_size=1, pre_dispatch="all", max_nbytes=None)
             self._pool = self._exit.enter_context(pool)
         return self._pool
+
+
+def chunk_count(n: int) -> int:
+    """Return into how many chunks n designs are divided: a power of two, so that cores share."""
+    return 2 ** max(int(np.ceil(np.log2(n / CHUNK))), 1) if n >= WHOLE else 1
 
 
 def _figures_there(

@@ -5,7 +5,7 @@ from pathlib import Path
 import numpy as np
 
 from models import Figures, Reflectors, evaluate
-from optim.evaluate import CHUNK, Evaluator
+from optim.evaluate import CHUNK, Evaluator, chunk_count
 from tests.search_specs import read
 
 
@@ -28,6 +28,12 @@ def test_one_worker_is_two_workers_bit_for_bit(tmp_path: Path) -> None:
         alone, shared = one.figures(designs, frequencies), two.figures(designs, frequencies)
     for name in Figures.names():
         assert getattr(alone, name).tobytes() == getattr(shared, name).tobytes(), name
+
+
+def test_chunks_are_as_many_as_cores_share_and_none_too_large() -> None:
+    counts = {n: chunk_count(n) for n in (1, 15, 16, 24, 50, 51, 100, 400)}
+    assert counts == {1: 1, 15: 1, 16: 2, 24: 2, 50: 2, 51: 4, 100: 4, 400: 16}
+    assert all(n / chunk_count(n) <= CHUNK for n in range(1, 2000))
 
 
 def test_chunks_are_the_models_own_figures_in_order(tmp_path: Path) -> None:
