@@ -43,12 +43,12 @@ MODELS: Final[dict[str, Model]] = {
     ),
     "ray": Model(
         radiate=ray.radiate,
-        summary="images, apex, rims and plate ends by rays, sinusoidal current",
-        gives_match=False,
+        summary="images, apex, rims and plate ends by rays, solved terminals",
+        gives_match=True,
     ),
     "modal": Model(
         radiate=lambda reflectors, frequencies, _build: modal.radiate(reflectors, frequencies),
-        summary="exact mode matching, plates endless along the dipole, sinusoidal current",
+        summary="mode matching, plates endless along the dipole, sinusoidal current",
         gives_match=False,
     ),
     "moment": Model(

@@ -1,8 +1,9 @@
 """`ray`: the finite corner by rays at the plates and radiation of the currents they leave there.
 
-Far fields on both cuts and the power through the sphere; impedance by reaction of the currents on
-the dipole's sinusoidal current (induced EMF). Currents: `models.ray_currents`. Integrals over s and
-z are Gauss-Jacobi sums with the weight of a plate edge, (1 − x)^{-1/2}.
+Far fields on both cuts and the power through the sphere, of a sinusoidal current; impedance by
+reaction of the plates' currents on it (induced EMF), brought to the terminals of the solved dipole
+(`models.dipole_port`). Currents: `models.ray_currents`. Integrals over s and z are Gauss-Jacobi
+sums with the weight of a plate edge, (1 − x)^{-1/2}.
 
 Valid from w, L of about 0.6 λ.
 """
@@ -18,7 +19,8 @@ from scipy.special import roots_jacobi
 
 from models.build import Build
 from models.conventions import ETA0, ComplexArray, FloatArray, decibels, wavenumber
-from models.dipole import far_field, mutual_impedance, terminal
+from models.dipole import far_field, mutual_impedance
+from models.dipole_port import at_terminals
 from models.edges import SingleArray, WaveArray, turn
 from models.geometry import Reflectors
 from models.pattern import CUT_ANGLES, Pattern
@@ -138,20 +140,21 @@ def _solve(
     # Reaction on the dipole: both plates, both halves; the dipole's field is that for 1 A.
     axial = axial_field(corners)
     moments = surface[0] * np.ascontiguousarray(weight.transpose(1, 2, 0))
-    reaction = mutual_impedance(1.0, dipole, diameter / 2.0)
-    reaction -= 4.0 * (axial * moments).sum(axis=(0, 1), dtype=np.complex128)
+    added = -4.0 * (axial * moments).sum(axis=(0, 1), dtype=np.complex128)
+    gap, maximum = at_terminals(added, dipole, diameter / 2.0)
     # Two measures of one power: over the sphere the better ratio to the field (directivity), by
     # reaction the better resistance; how far they are apart is the model's own doubt.
     outward = ETA0 / np.pi * power
-    radiated = np.maximum(reaction.real, 0.3 * outward)
+    reaction = mutual_impedance(1.0, dipole, diameter / 2.0).real + added.real
+    doubt = np.abs(decibels(np.maximum(reaction, 1e-3 * outward) / outward))
+    square = np.abs(maximum) ** 2
+    radiated = np.maximum(gap.real, 0.3 * square * outward)
     density = along_z.real**2 + along_z.imag**2 + along_s.real**2 + along_s.imag**2
     plates = 4.0 * (density * weight).sum(axis=(1, 2), dtype=np.float64)
     rod = (dipole - np.sin(dipole)) / 2.0 / (np.pi * diameter)  # ∫ sin²(h − |z|) dz over 2πa
-    lost = skin * (plates + rod)
-    gap = terminal(radiated + lost + 1j * reaction.imag, 1.0, dipole)
-    doubt = np.abs(decibels(np.maximum(reaction.real, 1e-3 * outward) / outward))
+    lost = square * skin * (plates + rod)
     return np.stack([h_field, e_field]), np.stack(
-        [power, gap.real, gap.imag, radiated / (radiated + lost), doubt]
+        [power, radiated + lost, gap.imag, radiated / (radiated + lost), doubt]
     )
 
 

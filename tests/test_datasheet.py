@@ -107,7 +107,7 @@ def corner(tmp_path_factory: pytest.TempPathFactory) -> Sheet:
 def narrow(tmp_path_factory: pytest.TempPathFactory) -> Sheet:
     """A bad design by a model without a match, with everything asked for."""
     shape = (25.0, 1.1, 2.0, 0.6, 0.45, 0.004)
-    return _sheet(tmp_path_factory.mktemp("narrow"), FULL, "ray", shape)
+    return _sheet(tmp_path_factory.mktemp("narrow"), FULL, "modal", shape)
 
 
 def test_pages_are_readable(corner: Sheet, narrow: Sheet, tmp_path: Path) -> None:

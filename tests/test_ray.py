@@ -11,6 +11,7 @@ from hypothesis import strategies as st
 
 from models import Build, Figures, Reflectors, evaluate, radiate, wedge
 from models.conventions import C0, ETA0
+from models.dipole_port import at_terminals
 from models.pattern import CUT_ANGLES
 
 LOSSLESS = Build(conductivity=np.inf)
@@ -80,14 +81,54 @@ def test_beam_of_wide_plates_off_boresight() -> None:
     assert np.abs(ratio).max() <= 0.05
 
 
-def test_radiation_resistance_and_added_reactance() -> None:
-    # Stored values of two independent full-wave solutions: 131.3 Ω and +18.9 Ω above the dipole
-    # alone for (90°, .5, 1, 1), 87.2 Ω and +31.1 Ω for the flat sheet 1 × 1 at a quarter wave.
+def test_added_impedance() -> None:
+    # Stored values of two independent full-wave solutions with a sinusoidal current: 131.3 Ω and
+    # +18.9 Ω above the dipole alone (73.13 Ω) for (90°, .5, 1, 1), 87.2 Ω and +31.1 Ω for the flat
+    # sheet 1 × 1 at a quarter wave; what plates add is brought to the terminals.
     two = corners([90.0, 180.0], [0.5, 0.25], [1.0, 0.5], 1.0)
     figures = evaluate(two, C0, model="ray", build=LOSSLESS)
-    alone = 42.5 - 0.9  # the radius of 5e-5 λ takes about an ohm off the thin limit
-    np.testing.assert_allclose(figures.resistance_ohm[:, 0], [131.3, 87.2], rtol=0.03)
-    np.testing.assert_allclose(figures.reactance_ohm[:, 0] - alone, [18.9, 31.1], atol=4.0)
+    added = np.array([58.17 + 18.9j, 14.07 + 31.1j], dtype=np.complex128)
+    radius = np.pi * two.dipole_diameter
+    there, _ = at_terminals(added, 2.0 * np.pi * two.dipole_length, radius)
+    np.testing.assert_allclose(figures.resistance_ohm[:, 0], there.real, rtol=0.03)
+    np.testing.assert_allclose(figures.reactance_ohm[:, 0], there.imag, atol=4.0)
+
+
+def test_resonant_corners() -> None:
+    # L. B. Cebik, Corner Reflectors Revisited Again (2005): 90°, plates 1.4 × 0.8 λ, dipole .008 λ
+    # thick, resonant at 50, 70 and 100 Ω; wire grids, so ±5 Ω.
+    designs = Reflectors(
+        apex_angle=np.pi / 2.0,
+        spacing=np.array([0.324, 0.370, 0.436]),
+        plate_width=0.8,
+        plate_length=1.4,
+        dipole_length=np.array([0.4240, 0.4268, 0.4388]),
+        dipole_diameter=0.008,
+    )
+    figures = evaluate(designs, C0, model="ray")
+    assert figures.resistance_ohm[:, 0] == pytest.approx([50.0, 70.0, 100.0], abs=5.0)
+    assert figures.reactance_ohm[:, 0] == pytest.approx(0.0, abs=5.0)
+
+
+def test_match_is_that_of_the_full_wave_model() -> None:
+    # Another method throughout: `moment`, itself checked against finite elements.
+    rng, n = np.random.default_rng(11), 60
+    designs = Reflectors(
+        apex_angle=np.radians(rng.uniform(60.0, 130.0, n)),
+        spacing=rng.uniform(0.25, 0.75, n),
+        plate_width=rng.uniform(0.6, 2.6, n),
+        plate_length=rng.uniform(0.6, 2.6, n),
+        dipole_length=rng.uniform(0.4, 0.5, n),
+        dipole_diameter=rng.uniform(0.004, 0.02, n),
+    )
+    ray, moment = (evaluate(designs, C0, model=name) for name in ("ray", "moment"))
+    near = moment.vswr < 3.0
+    assert near.sum() > 20
+    error = np.abs(ray.vswr - moment.vswr)[near]
+    assert np.median(error) < 0.05
+    assert np.quantile(error, 0.9) < 0.15
+    realized = np.abs(ray.realized_gain_dbi - moment.realized_gain_dbi)[near]
+    assert np.median(realized) < 0.15
 
 
 @pytest.mark.parametrize("turns", [1.5, 2.0, 2.5, 3.0, 3.5])
