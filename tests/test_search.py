@@ -14,6 +14,7 @@ from hypothesis import strategies as st
 
 from models import evaluate
 from optim.run import JOURNAL, Options, run
+from optim.search import scouted
 from optim.space import DesignSpace
 from tests.search_specs import EASY, read, write
 
@@ -120,3 +121,17 @@ def test_designs_are_judged_once_and_on_steps(whole: Path) -> None:
     steps = scouted[:, 1:] / 5e-3
     np.testing.assert_allclose(steps, np.round(steps), atol=1e-9)
     assert set(np.degrees(scouted[:, 0]).round(9)) == {60.0, 90.0}
+
+
+@pytest.mark.parametrize(("prove", "left"), [("moment", True), ("ray", False)])
+def test_match_is_left_to_a_prover(tmp_path: Path, prove: str, left: bool) -> None:
+    # Figures of a match: VSWR, realized gain, reactance (IEEE Std 145 puts mismatch in the second).
+    study = Path(__file__).parents[1] / "studies" / "matched_relay_450.toml"
+    text = study.read_text(encoding="utf-8")
+    requirements = read(tmp_path, text + f'\n[run]\nscout = "ray"\nprove = "{prove}"\n')
+    space = DesignSpace.from_requirements(requirements)
+    asked = scouted(requirements, space, "ray")
+    figures = {limit.figure for limit in asked.limits}
+    assert "front_to_back_db" in figures
+    assert ({"vswr", "realized_gain_dbi"} & figures == set()) is left
+    assert ("gain" if left else "realized_gain") in {goal.name for goal in asked.goals}
