@@ -89,15 +89,19 @@ def message(text: str) -> None:
 
 def model_name(value: str | None) -> str | None:
     """Return the name of a model, or refuse it with the names there are."""
-    if value is None or value in MODELS:
-        return value
-    reason = f"{value!r} given, allowed: {', '.join(MODELS)}"
-    raise typer.BadParameter(reason)
+    return _one_of(value, *MODELS)
 
 
 def prover_name(value: str | None) -> str | None:
     """Return the name of a proving model or "none", or refuse it."""
-    return value if value == "none" else model_name(value)
+    return _one_of(value, *MODELS, "none")
+
+
+def _one_of(value: str | None, *names: str) -> str | None:
+    if value is None or value in names:
+        return value
+    reason = f"{value!r} given, allowed: {', '.join(names)}"
+    raise typer.BadParameter(reason)
 
 
 def _print_version(value: bool) -> None:
@@ -157,7 +161,10 @@ def new(
 @app.command("check")
 @step
 def check(spec: Spec) -> int:
-    """Say how a requirements file is understood, and what physics already rules out."""
+    """Say how a requirements file is understood.
+
+    Ranges derived from it are shown, and what physics rules out before any search.
+    """
     requirements = read_requirements(spec)
     space = DesignSpace.from_requirements(requirements)
     found = findings(requirements, space)
@@ -219,7 +226,10 @@ def search(
 def report_of(
     folder: Annotated[Path, typer.Argument(metavar="DIR", help="Folder of a finished search.")],
 ) -> int:
-    """Make the report of a finished search again from its data, papers and pictures as well."""
+    """Make the report of a finished search again.
+
+    Everything is made from the data in its folder, papers and pictures as well.
+    """
     from optim.finish import finish  # matplotlib and pymoo are slow to start
 
     answer(str(finish(folder, cpu_count())))
@@ -239,7 +249,7 @@ def study_of(
         bool, typer.Option("--status", help="Only say how far the study in the folder is.")
     ] = False,
 ) -> int:
-    """Search again and again, with keys of the requirements varied, and compare."""
+    """Search many times, with keys of the requirements varied."""
     from optim import study as studies  # pymoo is slow to start
 
     if status:
@@ -302,7 +312,10 @@ def trade_off(
     cluster: Cluster = None,
     quiet: Quiet = False,
 ) -> int:
-    """Show how the figures move, and what each requirement costs in size."""
+    """Show what each requirement costs in size.
+
+    And how the figures move across the ranges and across the band.
+    """
     from optim.run import DEFAULT_FOLDER  # pymoo and matplotlib are slow to start
     from optim.trade import Options, trade
     from optim.trade_files import page, write

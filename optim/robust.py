@@ -1,7 +1,8 @@
 """A search for antennas that can be built: yield (0 to 1) as a goal or as a condition.
 
 A yield takes dozens of solves, so the search breeds for what it follows from: the smallest margin,
-each margin measured by what the tolerances take of it at one design near the requirements. The
+each margin measured, once a second model proves, by what the tolerances take of it at one design
+near the requirements; a model that decides alone does as well with margins in their steps. The
 designs of that front are then studied, and their yields decide.
 """
 

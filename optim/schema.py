@@ -14,7 +14,7 @@ from pydantic import BaseModel, BeforeValidator, ConfigDict, ValidationError
 from pydantic_core import ErrorDetails
 
 from models import MODELS
-from optim.faults import Fault, Source, dotted, shown
+from optim.faults import Fault, Source, SpecError, dotted, shown
 from optim.values import choice, count, mask, near_miss, number, span, title
 
 __all__ = [
@@ -41,6 +41,14 @@ GOALS_LARGE: Final = ("gain", "realized_gain", "front_to_back", "yield")
 """Goals that only make sense as large as can be."""
 GOALS_EITHER: Final = ("beamwidth_h", "beamwidth_e")
 """Goals that make sense both ways."""
+
+
+KINDS: Final = {
+    "require": "a requirements file",
+    "reflector": "a design file",
+    "spec": "a study file",
+}
+"""Kinds of files by the key that tells them apart."""
 
 
 class Table(BaseModel):
@@ -241,7 +249,16 @@ def parse(schema: type[FileT], source: Source) -> tuple[FileT, dict[str, Fault]]
     """Return what is right in `source` and the faults of the rest by dotted key.
 
     `source.content` is used up: the values that are refused are taken out of it.
+
+    Raises
+    ------
+    SpecError
+        For a file of another kind.
     """
+    own = next(mark for mark in KINDS if mark in schema.model_fields)
+    if own not in source.content:
+        for mark in KINDS.keys() & source.content.keys():
+            raise SpecError([Fault(source.name, "", KINDS[mark], KINDS[own])])
     try:
         return schema.model_validate(source.content), {}
     except ValidationError as error:

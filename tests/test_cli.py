@@ -225,6 +225,7 @@ def test_check_ends_with_one_where_physics_says_no(
         ["check", "a", "b"],
         ["analyse", "x.toml", "--modle", "image"],
         ["analyse", "x.toml", "--model", "momnt"],
+        ["search", "x.toml", "--prove", "nobody"],
         ["analyse", "no-such-file.toml"],
         ["check", "/"],
     ],
@@ -243,6 +244,19 @@ def test_bad_usage_ends_with_two(arguments: list[str], capsys: pytest.CaptureFix
 def test_help_ends_with_zero(arguments: list[str], capsys: pytest.CaptureFixture[str]) -> None:
     assert cli.main(arguments) == 0
     assert "Usage: apexfront" in capsys.readouterr().out
+
+
+def test_what_may_prove_is_listed(capsys: pytest.CaptureFixture[str]) -> None:
+    assert cli.main(["search", "x.toml", "--prove", "nobody"]) == 2
+    told = " ".join(capsys.readouterr().err.split())
+    assert f"'nobody' given, allowed: {', '.join(MODELS)}, none" in told
+
+
+def test_summaries_of_the_commands_are_whole(capsys: pytest.CaptureFixture[str]) -> None:
+    assert cli.main(["--help"]) == 0
+    commands = capsys.readouterr().out.partition("Commands:")[2]
+    assert "requirements file" in commands
+    assert "..." not in commands
 
 
 def test_version(capsys: pytest.CaptureFixture[str]) -> None:

@@ -158,6 +158,27 @@ def test_broken_file_is_refused_in_words(
     )
 
 
+@pytest.mark.parametrize(
+    ("command", "text", "words"),
+    [
+        ("analyse", GOOD, "a requirements file given, allowed: a design file"),
+        ("study", GOOD, "a requirements file given, allowed: a study file"),
+        (
+            "search",
+            "[reflector]\nspacing_mm = 3",
+            "a design file given, allowed: a requirements file",
+        ),
+        ("check", 'spec = "x.toml"', "a study file given, allowed: a requirements file"),
+    ],
+)
+def test_file_of_another_kind_is_told_in_one_line(
+    tmp_path: Path, capsys: pytest.CaptureFixture[str], command: str, text: str, words: str
+) -> None:
+    path = written(tmp_path, text)
+    assert main([command, str(path)]) == 2
+    assert capsys.readouterr().err == f"{path}: {words}\n"
+
+
 def test_every_fault_is_named_at_once(tmp_path: Path) -> None:
     text = """
     titel = "x"
