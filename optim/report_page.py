@@ -28,7 +28,7 @@ __all__ = ["envelope", "margin_cells", "page", "role_rows", "role_words"]
 
 VALID: Final = {
     "image": "apex angles 180°/n, plates of no end: nothing behind the antenna",
-    "ray": "plates of 0.6 λ and more; no reactance, so no match",
+    "ray": "plates of 0.6 λ and more",
     "modal": "any angle and plate width, plates endless along the dipole; no match",
     "moment": "any size; where its grids disagree it says so, and the design is rejected",
 }
