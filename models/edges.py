@@ -25,10 +25,12 @@ __all__ = [
     "SingleArray",
     "WaveArray",
     "hard",
+    "root",
     "seen_part",
     "shed",
     "soft",
     "spread",
+    "still",
     "tail",
     "transition",
     "turn",
@@ -39,10 +41,9 @@ WaveArray = NDArray[np.complex64]
 
 _EDGE: Final = complex(np.exp(-0.25j * np.pi) / np.sqrt(np.pi))
 
-_STEPS: Final = 512
-_REACH: Final = 32
-"""The tail is tabulated `_STEPS` to the unit up to `_REACH` (a detour of 160 wavelengths) and read
-off by straight lines, to 2e-5; beyond it keeps the last value, below 0.01."""
+_TINY: Final = 1e-12
+_COUNT: Final = 16_384
+"""The smooth part of the tail is tabulated, evenly over 1/(1 + ζ), and read off to 2e-5."""
 
 
 def transition(x: ArrayLike) -> ComplexArray:
@@ -56,31 +57,40 @@ def _still_tail(zeta: NDArray[np.float64]) -> ComplexArray:
     return np.asarray(0.5 * wofz(1j * np.exp(0.25j * np.pi) * zeta))
 
 
-def _table() -> tuple[WaveArray, WaveArray]:
-    zeta = np.arange(_STEPS * _REACH + 2) / _STEPS
-    values = np.exp(-1j * zeta * zeta) * _still_tail(zeta)
-    rises = np.append(np.diff(values[:-1]), [0.0, 0.0])
-    return values.astype(np.complex64), rises.astype(np.complex64)
+def _table() -> WaveArray:
+    # An index is cut off, not rounded: entries stand for the middles.
+    place = (np.arange(_COUNT + 1) + 0.5) / _COUNT
+    return _still_tail(np.maximum(1.0 / place - 1.0, 0.0)).astype(np.complex64)
 
 
-_VALUES, _RISES = _table()
+_TABLE = _table()
 
 
 def turn(phase: SingleArray) -> WaveArray:
     """Return e^{−j·phase} (radians, any shape)."""
     out = np.empty(phase.shape, dtype=np.complex64)
-    out.real = np.cos(phase)
-    out.imag = np.sin(-phase)
+    np.cos(phase, out=out.real)
+    np.sin(-phase, out=out.imag)
     return out
+
+
+def still(zeta: SingleArray) -> WaveArray:
+    """Return e^{+jζ²}·Q(ζ), the tail without its phase: smooth and falling, ζ >= 0."""
+    place = zeta + np.float32(1.0)
+    np.divide(np.float32(_COUNT), place, out=place)
+    return np.asarray(_TABLE.take(place.astype(np.intp), mode="clip"))
+
+
+def root(square: SingleArray) -> SingleArray:
+    """Return the square root of a detour, which rounding may have made negative or nothing."""
+    out = np.maximum(square, np.float32(_TINY))
+    return np.asarray(np.sqrt(out, out=out))
 
 
 def tail(zeta: SingleArray) -> WaveArray:
     """Return Fresnel's tail Q(ζ) = e^{jπ/4}/√π ∫_ζ^∞ e^{−jt²} dt; Q(0) = ½, ζ >= 0."""
-    place = zeta * np.float32(_STEPS)
-    index = place.astype(np.int32)
-    out = np.take(_RISES, index, mode="clip")
-    out *= place - index.astype(np.float32)
-    out += np.take(_VALUES, index, mode="clip")
+    out = still(zeta)
+    out *= turn(zeta * zeta)
     return out
 
 
@@ -103,14 +113,24 @@ def hard(zeta: SingleArray) -> WaveArray:
 
 def soft(zeta: SingleArray) -> WaveArray:
     """Return the current near an edge along E over that without the edge; 1/ζ at the edge."""
-    return hard(zeta) + shed(zeta)
+    out = still(zeta)
+    out *= -2.0
+    out += shed(zeta)
+    out *= turn(zeta * zeta)
+    out += 1.0
+    return out
 
 
 def shed(zeta: SingleArray, weight: SingleArray | float = 1.0) -> WaveArray:
-    """Return e^{−jπ/4}·e^{−jζ²}/(√π·ζ), the current along an edge that a wave leaves, × weight."""
-    out = turn(zeta * zeta)
-    out *= weight / zeta
-    out *= np.complex64(_EDGE)
+    """Return e^{−jπ/4}/(√π·ζ), times `weight`.
+
+    The current along an edge that a wave leaves; it has the phase of the tail, e^{−jζ²}, yet to
+    come.
+    """
+    size = weight / zeta
+    out = np.empty(size.shape, dtype=np.complex64)
+    np.multiply(size, np.float32(_EDGE.real), out=out.real)
+    np.negative(out.real, out=out.imag)
     return out
 
 

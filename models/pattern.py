@@ -15,10 +15,26 @@ import numpy as np
 
 from models.conventions import ComplexArray, FloatArray
 
-__all__ = ["CUT_ANGLES", "Pattern", "Sphere"]
+__all__ = ["CUT_ANGLES", "Pattern", "Sphere", "cosine_interpolation", "middles"]
 
 CUT_ANGLES: Final[FloatArray] = np.radians(np.arange(0.0, 181.0, 2.0))
 """Angles off boresight at which models give both cuts, radians, (n_angle,)."""
+
+
+def middles(count: int) -> FloatArray:
+    """Return the middles of `count` equal parts of 0 to π, radians."""
+    return np.asarray((np.arange(count) + 0.5) * (np.pi / count))
+
+
+def cosine_interpolation(count: int, angles: FloatArray) -> FloatArray:
+    """Return the matrix from samples in the `middles` to `angles`, (n_angle, count).
+
+    Exact for even functions of period 2π with harmonics below `count`.
+    """
+    order = np.arange(count)
+    weight = np.where(order == 0, 1.0, 2.0) / count
+    samples = np.cos(order[:, None] * middles(count))
+    return np.asarray((np.cos(angles[:, None] * order) * weight) @ samples)
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)

@@ -1,36 +1,47 @@
 """`ray`: the finite corner by rays at the plates and radiation of the currents they leave there.
 
-Far fields on both cuts and the power through the sphere, of a sinusoidal current; impedance by
-reaction of the plates' currents on it (induced EMF), brought to the terminals of the solved dipole
-(`models.dipole_port`). Currents: `models.ray_currents`. Integrals over s and z are Gauss-Jacobi
-sums with the weight of a plate edge, (1 − x)^{-1/2}.
+Far fields on both cuts and the power through the sphere (`models.ray_far`), of a sinusoidal
+current; impedance by reaction of the plates' currents (`models.ray_currents`) on it (induced EMF),
+brought to the terminals of the solved dipole (`models.dipole_port`). Integrals over s and z are
+Gauss-Jacobi sums with the weight of a plate edge, (1 − x)^{-1/2}. Amplitudes of waves
+(`models.ray_waves`) are found at fewer points and interpolated: polynomials in s and, as befits an
+edge, in √(L/2 − z).
 
 Valid from w, L of about 0.6 λ.
 """
 
 from __future__ import annotations
 
-from dataclasses import replace
+from collections.abc import Iterator
 from functools import cache
 from typing import Final
 
 import numpy as np
+from numpy.typing import NDArray
 from scipy.special import roots_jacobi
 
 from models.build import Build
 from models.conventions import ETA0, ComplexArray, FloatArray, decibels, wavenumber
-from models.dipole import far_field, mutual_impedance
+from models.dipole import mutual_impedance
 from models.dipole_port import at_terminals
-from models.edges import SingleArray, WaveArray, turn
+from models.edges import SingleArray, WaveArray
 from models.geometry import Reflectors
 from models.pattern import CUT_ANGLES, Pattern
 from models.ray_currents import currents
+from models.ray_far import far_fields
 from models.ray_sources import Corners, axial_field
+from models.ray_waves import Waves, other_waves, own_waves, runs_of
 
 __all__ = ["radiate"]
 
-_BLOCK: Final = 24_000
-"""Points on the plates that are held at once: what fits a processor's cache."""
+Counts = tuple[int, int]
+"""Numbers of points along s and along half the length."""
+
+_OWN_POINTS: Final = 9, 4
+_OTHER_POINTS: Final = 8, 4
+_MANY: Final = 72_000
+_BLOCK: Final = 16_000
+"""Points of waves and of currents that are held at once: what fits a processor's cache."""
 
 
 def radiate(reflectors: Reflectors, frequencies_hz: FloatArray, build: Build) -> Pattern:
@@ -47,26 +58,28 @@ def radiate(reflectors: Reflectors, frequencies_hz: FloatArray, build: Build) ->
     """
     k = wavenumber(frequencies_hz)
     pairs = reflectors.matrix()[:, None, :] * np.where(np.arange(6) == 0, 1.0, k[:, None])
+    shape = pairs.shape[:2]
     pairs = pairs.reshape(-1, 6)
-    skin = np.broadcast_to(
-        np.sqrt(k * ETA0 / (2.0 * build.conductivity)), (len(reflectors), k.size)
-    )
-    shape, angles = (len(reflectors), k.size), CUT_ANGLES
-    fields = np.empty((2, pairs.shape[0], angles.size), dtype=np.complex128)
-    numbers = np.empty((5, pairs.shape[0]))
-    counts = _node_counts(pairs)
-    order = np.lexsort((pairs[:, 0], counts[:, 1], counts[:, 0]))
-    start = 0
-    while start < order.size:
-        n_s, n_z = counts[order[start]]
-        same = np.all(counts[order[start:]] == (n_s, n_z), axis=1)
-        length = int(same.argmin()) if not same.all() else same.size
-        rows = order[start : start + min(length, max(1, _BLOCK // int(n_s * n_z)))]
-        fields[:, rows], numbers[:, rows] = _solve(pairs[rows], skin.reshape(-1)[rows], n_s, n_z)
-        start += rows.size
+    order = np.argsort(pairs[:, 0], kind="stable")
+    pairs = pairs[order]
+    skin = np.tile(np.sqrt(k * ETA0 / (2.0 * build.conductivity)), shape[0])[order]
+    alone = _alone(pairs[:, 4], pairs[:, 5])
+    fields = np.empty((2, order.size, CUT_ANGLES.size), dtype=np.complex128)
+    numbers = np.empty((5, order.size))
+    for rows, scale in _alike(_scales(pairs), _MANY // 36):
+        points = [(scale[0] * n_s, scale[1] * n_z) for n_s, n_z in (_OWN_POINTS, _OTHER_POINTS)]
+        own, other = (_few(pairs[rows], some) for some in points)
+        waves = own_waves(own), other_waves(other, min(2 + 4 * scale[0], 20))
+        for part, many in _alike(_counts(pairs[rows]), _BLOCK):
+            between = [_between(some, many) for some in points]
+            here = rows[part]
+            to = order[here]
+            fields[:, to], numbers[:, to] = _solve(
+                pairs[here], skin[here], alone[here], many, waves, part, between
+            )
     power, resistance, reactance, efficiency, doubt = numbers.reshape(5, *shape)
     return Pattern(
-        angles=angles,
+        angles=CUT_ANGLES,
         h_field=fields[0].reshape(*shape, -1),
         e_field=fields[1].reshape(*shape, -1),
         power=power,
@@ -77,80 +90,119 @@ def radiate(reflectors: Reflectors, frequencies_hz: FloatArray, build: Build) ->
     )
 
 
-def _node_counts(pairs: FloatArray) -> np.ndarray:
-    """Return nodes along s and along half the length, (n, 2) integers."""
+def _alone(length: FloatArray, diameter: FloatArray) -> FloatArray:
+    """Return the radiation resistance of the dipoles alone, Ω; many designs have the same one."""
+    kinds, which = np.unique(np.stack([length, diameter], axis=1), axis=0, return_inverse=True)
+    return np.asarray(mutual_impedance(1.0, kinds[:, 0], kinds[:, 1] / 2.0).real[which])
+
+
+def _counts(pairs: FloatArray) -> NDArray[np.intp]:
+    """Return nodes along s and along half the length, (n, 2)."""
     width, half = pairs[:, 2], pairs[:, 3] / 2.0
     # A Gauss sum needs half a node a radian of phase and a few more; coarse steps keep blocks few.
-    along_s = 4.0 * np.ceil((0.6 * width + 6.5) / 4.0)
-    along_z = 2.0 * np.ceil((0.5 * half + 2.0) / 2.0)
-    return np.stack([along_s, along_z], axis=1).astype(np.intp)
+    along_s = 4.0 * np.ceil((0.5 * width + 2.0 * np.cbrt(width) + 1.3) / 4.0)
+    along_z = 2.0 * np.ceil((0.5 * half + 1.0) / 2.0) + 1.0
+    counts = np.stack([np.maximum(along_s, 12.0), np.maximum(along_z, 5.0)], axis=1)
+    return counts.astype(np.intp)
+
+
+def _scales(pairs: FloatArray) -> NDArray[np.intp]:
+    """Return how many times as many points waves need as on a small plate, (n, 2)."""
+    return np.ceil(pairs[:, 2:4] / 20.0).astype(np.intp)
+
+
+def _alike(counts: NDArray[np.intp], most: int) -> Iterator[tuple[NDArray[np.intp], Counts]]:
+    """Yield rows that have the same counts, and these; as many as have `most` points together."""
+    for n_s, n_z in np.unique(counts, axis=0).tolist():
+        rows = np.flatnonzero((counts == (n_s, n_z)).all(axis=1))
+        pieces = min(rows.size, -(-rows.size * n_s * n_z // most))
+        for part in np.array_split(rows, pieces):
+            yield part, (n_s, n_z)
 
 
 @cache
 def _edge_gauss(count: int) -> tuple[FloatArray, FloatArray]:
+    """Return places in (0, 1) and weights for what has a plate edge at 1."""
     x, weights = roots_jacobi(count, -0.5, 0.0)
-    return x, weights * np.sqrt(1.0 - x) / 2.0
+    return (1.0 + x) / 2.0, weights * np.sqrt(1.0 - x) / 2.0
 
 
 @cache
-def _between(few: int, count: int) -> SingleArray:
-    """Return what interpolates, by a polynomial, from `few` edge nodes to `count`, (count, few)."""
-    x, y = _edge_gauss(few)[0], _edge_gauss(count)[0]
-    weights = 1.0 / np.prod(x[:, None] - x + np.eye(few), axis=1)
+def _spread_out(count: int) -> FloatArray:
+    """Return places in (0, 1) that are good to interpolate from."""
+    return np.asarray((1.0 + np.polynomial.legendre.leggauss(count)[0]) / 2.0)
+
+
+def _few(pairs: FloatArray, points: Counts) -> Corners:
+    s, root = (_spread_out(count) for count in points)
+    return _corners(pairs, s, 1.0 - root**2)
+
+
+@cache
+def _between(some: Counts, many: Counts) -> tuple[SingleArray, SingleArray]:
+    """Return what interpolates from some points to many: along s (n_s, n_few_s), and along z."""
+    s, z = (_edge_gauss(count)[0] for count in many)
+    along_s = _polynomial(_spread_out(some[0]), s)
+    return _single(along_s), _single(_polynomial(_spread_out(some[1]), np.sqrt(1.0 - z)))
+
+
+def _polynomial(x: FloatArray, y: FloatArray) -> FloatArray:
+    """Return the matrix from values at x to values at y of the polynomial through them."""
+    weights = 1.0 / np.prod(x[:, None] - x + np.eye(x.size), axis=1)
     share = weights / (y[:, None] - x)
-    return _single(share / share.sum(axis=1, keepdims=True))
+    return np.asarray(share / share.sum(axis=1, keepdims=True))
 
 
-@cache
-def _plain_gauss(count: int) -> tuple[FloatArray, FloatArray]:
-    x, weights = np.polynomial.legendre.leggauss(count)
-    return x, weights
-
-
-def _nodes(size: FloatArray, count: int) -> tuple[FloatArray, FloatArray]:
-    """Return places in (0, size) and weights, (n, count), for what has a plate edge at `size`."""
-    x, weights = _edge_gauss(count)
-    return size[:, None] * (1.0 + x) / 2.0, size[:, None] * weights
+def _corners(pairs: FloatArray, s: FloatArray, z: FloatArray) -> Corners:
+    """Return corners with points at the parts s of the width and z of half the length."""
+    alpha, spacing, width, length, dipole, _ = _single(pairs.T)
+    return Corners(
+        apex_angle=alpha,
+        spacing=spacing,
+        plate_width=width,
+        plate_length=length,
+        dipole_length=dipole,
+        s=_single(s)[:, None, None] * width,
+        z=_single(z)[None, :, None] * (0.5 * length),
+    )
 
 
 def _solve(
-    pairs: FloatArray, skin: FloatArray, n_s: int, n_z: int
+    pairs: FloatArray,
+    skin: FloatArray,
+    alone: FloatArray,
+    many: Counts,
+    waves: tuple[Waves, ...],
+    part: NDArray[np.intp],
+    between: list[tuple[SingleArray, SingleArray]],
 ) -> tuple[ComplexArray, FloatArray]:
-    """Return both cuts (2, n, n_angle) and power, R, X, efficiency and doubt (5, n)."""
-    alpha, spacing, width, length, dipole, diameter = pairs.T
-    s, weight_s = _nodes(width, n_s)
-    z, weight_z = _nodes(length / 2.0, n_z)
-    corners = Corners(
-        apex_angle=_single(alpha),
-        spacing=_single(spacing),
-        plate_width=_single(width),
-        plate_length=_single(length),
-        dipole_length=_single(dipole),
-        s=_single(s.T[:, None, :]),
-        z=_single(z.T[None, :, :]),
-    )
-    n_few = max(n_s // 3 + 2, 2 * n_s // 3 - 4)
-    few = replace(corners, s=_single(_nodes(width, n_few)[0].T[:, None, :]))
-    surface = currents(corners, few, _between(n_few, n_s))
-    along_z, along_s = (np.ascontiguousarray(np.moveaxis(j, 2, 0)) for j in surface)
-    weight = _single(weight_s[:, :, None] * weight_z[:, None, :])
-    moment_z, moment_s = along_z * weight, along_s * weight
-    h_field, e_field = _cuts(corners, moment_z, moment_s)
-    power = _sphere_mean(corners, moment_z, moment_s)
+    """Return both cuts (2, n, n_angle) and power, R, X, efficiency and doubt (5, n).
+
+    `part` says which corners of the waves these are.
+    """
+    _, _, width, length, dipole, diameter = pairs.T
+    (s, weight_s), (z, weight_z) = (_edge_gauss(count) for count in many)
+    c = _corners(pairs, s, z)
+    runs = runs_of(c)
+    amplitudes: dict[str, WaveArray] = {}
+    for some, ways in zip(waves, between, strict=True):
+        amplitudes |= some.of(part, runs, *ways)
+    surface = currents(c, runs, amplitudes)
+    weight = _single(weight_s[:, None, None] * weight_z[:, None] * (0.5 * width * length))
+    moments = [j * weight for j in surface]
+    h_field, e_field, power = far_fields(c, *(_parts(moment) for moment in moments))
     # Reaction on the dipole: both plates, both halves; the dipole's field is that for 1 A.
-    axial = axial_field(corners)
-    moments = surface[0] * np.ascontiguousarray(weight.transpose(1, 2, 0))
-    added = -4.0 * (axial * moments).sum(axis=(0, 1), dtype=np.complex128)
+    added = -4.0 * (axial_field(c) * moments[0]).sum(axis=(0, 1), dtype=np.complex128)
     gap, maximum = at_terminals(added, dipole, diameter / 2.0)
     # Two measures of one power: over the sphere the better ratio to the field (directivity), by
     # reaction the better resistance; how far they are apart is the model's own doubt.
     outward = ETA0 / np.pi * power
-    reaction = mutual_impedance(1.0, dipole, diameter / 2.0).real + added.real
+    reaction = alone + added.real
     doubt = np.abs(decibels(np.maximum(reaction, 1e-3 * outward) / outward))
     square = np.abs(maximum) ** 2
     radiated = np.maximum(gap.real, 0.3 * square * outward)
-    density = along_z.real**2 + along_z.imag**2 + along_s.real**2 + along_s.imag**2
-    plates = 4.0 * (density * weight).sum(axis=(1, 2), dtype=np.float64)
+    density = np.sum([j.real**2 + j.imag**2 for j in surface], axis=0)
+    plates = 4.0 * (density * weight).sum(axis=(0, 1), dtype=np.float64)
     rod = (dipole - np.sin(dipole)) / 2.0 / (np.pi * diameter)  # ∫ sin²(h − |z|) dz over 2πa
     lost = square * skin * (plates + rod)
     return np.stack([h_field, e_field]), np.stack(
@@ -158,84 +210,10 @@ def _solve(
     )
 
 
-def _single(array: FloatArray) -> SingleArray:
+def _single(array: FloatArray | SingleArray) -> SingleArray:
     return np.ascontiguousarray(array, dtype=np.float32)
 
 
-def _cuts(
-    c: Corners, moment_z: WaveArray, moment_s: WaveArray
-) -> tuple[ComplexArray, ComplexArray]:
-    """Return f on the H- and the E-plane cut, (n, n_angle) each, of moments (n, n_s, n_z)."""
-    angles = CUT_ANGLES.astype(np.float32)
-    psi = angles[: angles.size // 2 + 1]
-    half, spacing, length = (
-        0.5 * c.apex_angle[:, None],
-        c.spacing[:, None],
-        c.dipole_length[:, None],
-    )
-    s, z = c.s[:, 0].T[:, :, None], c.z[0].T[:, :, None]
-    toward = turn(-s * np.cos(psi - half)[:, None]) + turn(-s * np.cos(psi + half)[:, None])
-    h_plates = _all_round(moment_z.sum(axis=2)[:, None, :], toward)[:, 0]
-    ahead = turn(-spacing * np.cos(angles))
-    h_field = far_field(1.0, length, 1.0, 0.0) * ahead + h_plates
-    # E-plane: 2·½·2 for both plates, the factor of a current, both halves.
-    tilt = turn(-s * (np.cos(psi) * np.cos(half))[:, None])
-    height = z * np.sin(angles)
-    even = (_all_round(moment_z.swapaxes(1, 2), tilt) * np.cos(height)).sum(axis=1)
-    odd = (_all_round(moment_s.swapaxes(1, 2), tilt) * np.sin(height)).sum(axis=1)
-    forward, cosine = np.cos(CUT_ANGLES), np.sin(CUT_ANGLES)
-    sine, facing = np.abs(forward), np.where(forward >= 0.0, 1.0, -1.0)
-    e_plates = 2.0 * sine * even - 2j * (cosine * facing) * np.cos(half) * odd
-    e_field = far_field(1.0, length, sine, cosine) * ahead + e_plates
-    return np.asarray(h_field, dtype=np.complex128), np.asarray(e_field, dtype=np.complex128)
-
-
-def _turned(moments: WaveArray, phases: WaveArray) -> WaveArray:
-    """Return moments @ phases and moments @ phases*, stacked; the second serves π − ψ."""
-    both = np.concatenate([moments, moments.conj()], axis=1) @ phases
-    count = moments.shape[1]
-    return np.stack([both[:, :count], both[:, count:].conj()])
-
-
-def _all_round(moments: WaveArray, phases: WaveArray) -> WaveArray:
-    """Return moments @ phases on all angles, with the phases of those up to 90°."""
-    front, back = _turned(moments, phases)
-    return np.concatenate([front, back[..., -2::-1]], axis=2)
-
-
-def _sphere_mean(c: Corners, moment_z: WaveArray, moment_s: WaveArray) -> FloatArray:
-    """Return the mean of |f|² over the sphere, both polarisations, (n,).
-
-    Gauss-Legendre in cosθ over one hemisphere, equal steps in φ over half a turn; φ past 90° by
-    conjugation.
-    """
-    n, count_s, count_z = moment_z.shape
-    nodes, weights = _plain_gauss(count_z + 1)
-    cosines = ((nodes + 1.0) / 2.0).astype(np.float32)
-    sines = np.sqrt(1.0 - cosines**2)
-    steps = count_s // 2
-    phi = ((np.arange(steps) + 0.5) * (np.pi / 2.0 / steps)).astype(np.float32)
-    # Moments along z, even for the current along z and odd for that along s: (θ, n, 2, n_s).
-    height = c.z[0].T[:, :, None] * cosines
-    even = moment_z @ (sines * np.cos(height)).astype(np.complex64)
-    odd = 1j * (moment_s @ np.sin(height).astype(np.complex64))
-    moments = np.ascontiguousarray(np.stack([even, odd]).transpose(3, 1, 0, 2))
-    moments = np.concatenate([moments, moments.conj()], axis=2)
-    sine, cosine = sines[:, None, None], cosines[:, None, None]
-    dipole = far_field(1.0, c.dipole_length[:, None], sine, cosine).astype(np.float32)
-    ahead = dipole * turn(-(c.spacing[:, None] * sine) * np.cos(phi))
-    # Both halves of the turn, (θ, n, φ) each: toward the front, and φ past 90°.
-    theta, cross = [ahead, ahead.conj()], [np.zeros_like(ahead), np.zeros_like(ahead)]
-    s = c.s[:, 0].T[:, :, None]
-    for bend in (phi - 0.5 * c.apex_angle[:, None], phi + 0.5 * c.apex_angle[:, None]):
-        across = (sine * np.cos(bend)).swapaxes(0, 1).reshape(n, 1, -1)
-        phases = turn(-s * across).reshape(n, count_s, cosines.size, steps)
-        plate = moments @ np.ascontiguousarray(phases.transpose(2, 0, 1, 3))
-        for half, facing in ((0, -1.0), (1, 1.0)):
-            along_z, along_s = plate[:, :, 2 * half], plate[:, :, 2 * half + 1]
-            if half:
-                along_z, along_s = along_z.conj(), along_s.conj()
-            theta[half] = theta[half] + along_z + facing * cosine * np.cos(bend) * along_s
-            cross[half] = cross[half] + np.sin(bend) * along_s
-    power = sum(np.abs(field) ** 2 for field in (*theta, *cross))
-    return np.asarray((power.sum(axis=2).T @ weights) / (4.0 * steps))
+def _parts(moment: WaveArray) -> SingleArray:
+    """Return real and imaginary part of moments (n_s, n_z, n), as (n, 2, n_s, n_z)."""
+    return np.ascontiguousarray(np.stack([moment.real, moment.imag]).transpose(3, 0, 1, 2))

@@ -9,21 +9,30 @@ Source: Balanis, *Antenna Theory*, 4th ed., §8.5 (near field of a dipole).
 
 from __future__ import annotations
 
+from collections.abc import Iterable, Sequence
 from dataclasses import dataclass
+from typing import TypeVar
 
 import numpy as np
+from numpy.typing import NDArray
 
 from models.conventions import ETA0
 from models.edges import SingleArray, WaveArray, turn
 
-__all__ = ["Corners", "Sources", "axial_field", "lobe", "magnetic_field"]
+__all__ = ["Corners", "Images", "Runs", "axial_field", "lobe", "magnetic_field", "place"]
+
+Runs = Sequence[tuple[float, int]]
+"""Rays of many corners in a row: order of image or edge, and how many corners have it."""
+Single = TypeVar("Single", np.float32, np.complex64)
+Wanted = Sequence[tuple[int, int]]
+"""The same of sources, by their q."""
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)
 class Corners:
     """Corners in order of rising apex angle, and the points on their plates; lengths times k.
 
-    Points come first and corners last here: the long axis has to be the inner one for speed.
+    An image or an edge of some order is there for all corners up to some angle: the first ones.
 
     Parameters
     ----------
@@ -41,59 +50,97 @@ class Corners:
     s: SingleArray
     z: SingleArray
 
-    def first(self, count: int) -> Corners:
-        """Return the first `count` corners, views of the same memory."""
-        return Corners(**{name: value[..., :count] for name, value in vars(self).items()})
+    def part(self, rows: slice) -> Corners:
+        """Return some of the corners, views of the same memory."""
+        return Corners(**{name: value[..., rows] for name, value in vars(self).items()})
 
-    def lit(self) -> list[tuple[int, int]]:
-        """Return the orders j of images and how many corners have them: (j + 1/2)·α < π."""
-        most = int(np.ceil(np.pi / float(self.apex_angle[0])))
-        pairs = [(j, self.count(j + 0.5)) for j in range(most)]
-        return [(j, n) for j, n in pairs if n]
+    def repeated(self, counts: Iterable[int]) -> Corners:
+        """Return the first corners, as many as each of `counts`, one run after the other."""
+        return self.take(np.concatenate([np.arange(count) for count in counts]))
+
+    def take(self, rows: NDArray[np.intp]) -> Corners:
+        """Return copies of the corners at `rows`."""
+        return Corners(**{name: value.take(rows, axis=-1) for name, value in vars(self).items()})
+
+    def along(self, runs: Runs) -> tuple[Corners, SingleArray]:
+        """Return the corners of each ray, and its order times the apex angle; at most π if inf."""
+        c = self.repeated(n for _, n in runs)
+        orders = np.array([order for order, _ in runs], dtype=np.float32)
+        angle = np.repeat(orders, [n for _, n in runs]) * c.apex_angle
+        return c, np.where(np.isinf(angle), np.float32(np.pi), angle)
+
+    def most(self) -> int:
+        """Return the largest number of images that a plate sees."""
+        return int(np.ceil(np.pi / float(self.apex_angle[0])))
 
     def count(self, orders: float) -> int:
         """Return how many corners have `orders` times the apex angle below π."""
         return int(np.count_nonzero(orders * self.apex_angle < np.pi - 1e-6))
 
-
-class Sources:
-    """The dipole and its images as our plate sees them, q·α/2 from its face; each computed once."""
-
-    def __init__(self, corners: Corners) -> None:
-        self._corners = corners
-        self._known: dict[int, tuple[SingleArray, SingleArray, WaveArray]] = {}
-        self._bare: dict[int, WaveArray] = {}
-
-    def __call__(self, q: int, count: int) -> tuple[SingleArray, SingleArray, WaveArray]:
-        """Return ρ, direct path and H_φ (exact, 1 A) of source q for the first `count` corners."""
-        known = self._known.get(q)
-        if known is None or known[0].shape[-1] < count:
-            c = self._corners.first(count)
-            along = c.s - c.spacing * np.cos(0.5 * q * c.apex_angle)
-            rho2 = along * along + (c.spacing * np.sin(0.5 * q * c.apex_angle)) ** 2
-            rho = np.sqrt(rho2)
-            known = rho, np.sqrt(rho2 + c.z * c.z), magnetic_field(rho, c.z, c.dipole_length)
-            self._known[q] = known
-        rho, direct, field = known
-        return rho[..., :count], direct[..., :count], field[..., :count]
-
-    def bare(self, q: int, count: int) -> tuple[SingleArray, WaveArray]:
-        """Return direct path and H_φ over the dipole's far field in that direction."""
-        _, direct, field = self(q, count)
-        known = self._bare.get(q)
-        if known is None or known.shape[-1] < count:
-            c = self._corners.first(count)
-            known = self._bare[q] = field / lobe(c, c.z / direct)
-        return direct, known[..., :count]
+    def lit(self) -> list[tuple[int, int]]:
+        """Return the orders j of images and how many corners have them: (j + 1/2)·α < π."""
+        pairs = [(j, self.count(j + 0.5)) for j in range(self.most())]
+        return [(j, n) for j, n in pairs if n]
 
 
-def magnetic_field(rho: SingleArray, z: SingleArray, length: SingleArray) -> WaveArray:
-    """Return H_φ of the dipole for 1 A, exact, at transverse distance `rho` and height `z`."""
-    half = 0.5 * length
+class Images:
+    """The dipole and its images as our plate sees them, q·α/2 from its face.
+
+    Each is computed once, for as many corners as `counts` says.
+    """
+
+    def __init__(self, corners: Corners, counts: dict[int, int]) -> None:
+        c, turned = corners.along([(0.5 * q, n) for q, n in counts.items()])
+        along, across = place(c, turned)
+        along = c.s - along
+        rho2 = along * along + across * across
+        self._rho, self._direct = np.sqrt(rho2), np.sqrt(rho2 + c.z * c.z)
+        self._field = magnetic_field(c, self._rho, self._direct)
+        self._bare = self._field / lobe(c, c.z / self._direct)
+        sizes = np.array(list(counts.values()))
+        self._starts = dict(zip(counts, (np.cumsum(sizes) - sizes).tolist(), strict=True))
+
+    def rho(self, wanted: Wanted) -> SingleArray:
+        """Return the distances from the axes, (n_s, 1, n_ray)."""
+        return self._pick(self._rho, wanted)
+
+    def direct(self, wanted: Wanted) -> SingleArray:
+        """Return the direct paths R, (n_s, n_z, n_ray)."""
+        return self._pick(self._direct, wanted)
+
+    def field(self, wanted: Wanted) -> WaveArray:
+        """Return H_φ·e^{jR}."""
+        return self._pick(self._field, wanted)
+
+    def bare(self, wanted: Wanted) -> WaveArray:
+        """Return H_φ·e^{jR} over the dipole's far field in that direction."""
+        return self._pick(self._bare, wanted)
+
+    def _pick(self, values: NDArray[Single], wanted: Wanted) -> NDArray[Single]:
+        starts = [self._starts[q] for q, _ in wanted]
+        return np.concatenate(
+            [values[..., start : start + n] for start, (_, n) in zip(starts, wanted, strict=True)],
+            axis=-1,
+        )
+
+
+def place(c: Corners, turned: SingleArray) -> tuple[SingleArray, SingleArray]:
+    """Return where the image at the angle `turned` from a plate is: along it, and off it."""
+    return c.spacing * np.cos(turned), c.spacing * np.sin(turned)
+
+
+def magnetic_field(c: Corners, rho: SingleArray, direct: SingleArray) -> WaveArray:
+    """Return H_φ·e^{jR} of the dipole for 1 A, exact, at distance `rho` from its axis.
+
+    `direct` is R = √(ρ² + z²); what is left of the phase is that of the dipole's length.
+    """
+    half = 0.5 * c.dipole_length
     rho2 = rho * rho
-    total = turn(np.sqrt(rho2 + (z - half) ** 2))
-    total += turn(np.sqrt(rho2 + (z + half) ** 2))
-    total -= 2.0 * np.cos(half) * turn(np.sqrt(rho2 + z * z))
+    upper, lower = (np.sqrt(rho2 + (c.z - end) ** 2) for end in (half, -half))
+    # The waves of both ends: that of the mean path, times the beat of the two.
+    total = turn(0.5 * (upper + lower) - direct)
+    total *= 2.0 * np.cos(0.5 * (upper - lower))
+    total -= 2.0 * np.cos(half)
     total *= 0.25j / np.pi
     total /= rho
     return total
@@ -102,8 +149,8 @@ def magnetic_field(rho: SingleArray, z: SingleArray, length: SingleArray) -> Wav
 def axial_field(c: Corners) -> WaveArray:
     """Return E_z of the dipole for 1 A at the points, V/m times the unit of length, 1/k."""
     half = 0.5 * c.dipole_length
-    turned = 0.5 * c.apex_angle
-    rho2 = (c.s - c.spacing * np.cos(turned)) ** 2 + (c.spacing * np.sin(turned)) ** 2
+    along, across = place(c, 0.5 * c.apex_angle)
+    rho2 = (c.s - along) ** 2 + across**2
     total = np.zeros(np.broadcast_shapes(rho2.shape, c.z.shape), dtype=np.complex64)
     for end, weight in ((half, 1.0), (-half, 1.0), (0.0 * half, -2.0 * np.cos(half))):
         path = np.sqrt(rho2 + (c.z - end) ** 2)
@@ -115,5 +162,5 @@ def axial_field(c: Corners) -> WaveArray:
 def lobe(c: Corners, cosine: SingleArray) -> SingleArray:
     """Return the dipole's far field at the angle of `cosine` from its axis."""
     half = 0.5 * c.dipole_length
-    cosine = np.minimum(cosine, 1.0 - 1e-5)
+    cosine = np.minimum(cosine, np.float32(1.0 - 1e-5))
     return np.asarray((np.cos(half * cosine) - np.cos(half)) / np.sqrt(1.0 - cosine * cosine))

@@ -6,7 +6,7 @@ import numpy as np
 import pytest
 from scipy.special import erfc
 
-from models.edges import hard, seen_part, shed, soft, spread, tail, transition, turn
+from models.edges import hard, root, seen_part, shed, soft, spread, still, tail, transition, turn
 
 
 @pytest.mark.parametrize(
@@ -30,7 +30,13 @@ def test_tail_is_the_complementary_error_function() -> None:
     zeta = np.linspace(0.0, 31.0, 40_001).astype(np.float32)
     exact = 0.5 * erfc(np.exp(0.25j * np.pi) * zeta.astype(np.float64))
     assert np.abs(tail(zeta) - exact).max() < 3e-5
-    assert np.all(np.isfinite(tail(np.array([40.0, 1e4], dtype=np.float32))))
+    far = np.array([40.0, 1e4])
+    size = 1.0 / (2.0 * np.sqrt(np.pi) * far)  # leading term, Abramowitz & Stegun 7.1.23
+    np.testing.assert_allclose(np.abs(still(far.astype(np.float32))), size, rtol=0.02, atol=2e-5)
+
+
+def test_root_of_a_detour_that_rounding_made_negative() -> None:
+    assert root(np.array([-1e-5, 4.0], dtype=np.float32)) == pytest.approx([0.0, 2.0], abs=1e-5)
 
 
 def test_turn_is_a_phase() -> None:

@@ -61,24 +61,45 @@ def test_front_to_back_of_finite_corners(table_figures: Figures) -> None:
     assert np.percentile(error, 90) <= 6.0
 
 
+@pytest.mark.parametrize(
+    ("angle", "width", "length"),
+    [
+        (50.0, 80.0, 60.0),
+        (53.0, 40.0, 60.0),
+        (57.0, 40.0, 100.0),
+        (60.0, 40.0, 40.0),
+        (64.3, 40.0, 100.0),
+        (72.0, 40.0, 60.0),
+        (83.7, 40.0, 40.0),
+        (90.0, 40.0, 100.0),
+        (104.0, 40.0, 60.0),
+        (111.0, 40.0, 40.0),
+        (123.0, 40.0, 73.0),
+        (130.0, 40.0, 100.0),
+    ],
+)
+def test_beam_of_very_wide_plates_is_that_of_the_infinite_corner(
+    angle: float, width: float, length: float
+) -> None:
+    # Exact: models.wedge, itself checked against image sums and Harrington's series. At 50° plates
+    # of 40 wavelengths are not wide enough: endless ones of that width, solved exactly by `modal`,
+    # are 0.06 dB off themselves.
+    spacing = np.array([0.3, 0.37, 0.5, 0.64, 0.7])
+    pattern = radiate(corners(angle, spacing, width, length), C0, model="ray")
+    exact = np.abs(wedge.field(np.radians(angle), 2.0 * np.pi * spacing[:, None], CUT_ANGLES))
+    beam = np.logical_and.accumulate(exact**2 > exact[:, :1] ** 2 / 2.0, axis=1)
+    assert beam.sum() > 20
+    error = 20.0 * np.log10(np.abs(pattern.h_field[:, 0][beam]) / exact[beam])
+    assert np.abs(error).max() <= 0.05
+
+
 @pytest.mark.parametrize("angle", [60.0, 75.0, 90.0])
-def test_very_wide_plates_are_the_infinite_corner(angle: float) -> None:
-    # Exact: models.wedge, itself checked against image sums and Harrington's series.
+def test_power_before_very_wide_plates(angle: float) -> None:
+    # Exact: models.wedge, as above.
     spacing = np.array([0.35, 0.5, 0.65])
     pattern = radiate(corners(angle, spacing, 40.0, 100.0), C0, model="ray")
-    exact = wedge.field(np.radians(angle), 2.0 * np.pi * spacing, 0.0)
-    beam = 20.0 * np.log10(np.abs(pattern.h_field[:, 0, 0]) / np.abs(exact))
-    assert np.abs(beam).max() <= 0.05
     resistance = wedge.radiation_resistance(np.radians(angle), 2.0 * np.pi * spacing, np.pi)
     np.testing.assert_allclose(pattern.power[:, 0] * ETA0 / np.pi, resistance, rtol=0.012)
-
-
-def test_beam_of_wide_plates_off_boresight() -> None:
-    pattern = radiate(corners(90.0, 0.5, 40.0, 100.0), C0, model="ray")
-    inside = np.radians(20.0) >= CUT_ANGLES
-    exact = wedge.field(np.pi / 2.0, np.pi, CUT_ANGLES[inside])
-    ratio = 20.0 * np.log10(np.abs(pattern.h_field[0, 0, inside]) / np.abs(exact))
-    assert np.abs(ratio).max() <= 0.05
 
 
 def test_added_impedance() -> None:
