@@ -14,21 +14,21 @@ from typing import Any, Final
 import numpy as np
 
 from models.conventions import FloatArray
-from optim.archive import BoolArray, Judged
+from optim.archive import BoolArray, IntArray, Judged
 from optim.progress import Progress
 from optim.referee import Referee
 from optim.space import DesignSpace
 
-__all__ = ["apart", "refine"]
+__all__ = ["apart", "ranked", "refine"]
 
 FEWEST: Final = 2
 """Free variables; with less there is no ridge."""
 
-STARTS: Final = 3
+STARTS: Final = 4
 GENERATIONS: Final = 40
 
-APART: Final = 0.08
-"""Starts differ by this share of the range of some variable."""
+APART: Final = 0.2
+"""Share of the range of some variable by which designs are apart."""
 
 DEVIATION: Final = 0.06
 """First standard deviation, as a share of each variable's range."""
@@ -59,8 +59,7 @@ def refine(referee: Referee, *, rng: np.random.Generator, progress: Progress) ->
     free = ~space.fixed
     if free.sum() < FEWEST:
         return
-    scale = _scale(referee)
-    starts = apart(known.designs[np.argsort(_cost(known, scale), kind="stable")], space)
+    starts = apart(known.designs[ranked(known, referee)], space, STARTS)
     low, extent = space.low[free], (space.high - space.low)[free]
     strategies = [_strategy((start[free] - low) / extent, rng) for start in starts]
     with progress.stage(f"refine ({referee.model})", GENERATIONS) as told:
@@ -69,7 +68,7 @@ def refine(referee: Referee, *, rng: np.random.Generator, progress: Progress) ->
             shares = np.concatenate(asked)
             designs = np.tile(starts[0], (len(shares), 1))
             designs[:, free] = low + shares * extent
-            costs = _cost(referee.judge(space.snap(designs), _worth), scale)
+            costs = _cost(referee.judge(space.snap(designs), _worth), referee)
             ends = np.cumsum([len(some) for some in asked])
             for strategy, some, end in zip(strategies, asked, ends, strict=True):
                 strategy.tell(some, costs[end - len(some) : end].tolist())
@@ -79,16 +78,21 @@ def refine(referee: Referee, *, rng: np.random.Generator, progress: Progress) ->
                 return
 
 
-def apart(designs: FloatArray, space: DesignSpace) -> FloatArray:
-    """Return the first designs, at most `STARTS`, that are not near one taken before."""
+def apart(designs: FloatArray, space: DesignSpace, count: int) -> FloatArray:
+    """Return the first `count` designs that are not near one taken before."""
     extent = np.where(space.fixed, 1.0, space.high - space.low)
     taken = designs[:1]
     for design in designs:
-        if len(taken) == STARTS:
+        if len(taken) == count:
             break
         if (np.abs(design - taken) > APART * extent).any(axis=1).all():
             taken = np.vstack([taken, design])
     return taken
+
+
+def ranked(judged: Judged, referee: Referee) -> IntArray:
+    """Return the rows of `judged` from the best to the worst."""
+    return np.argsort(_cost(judged, referee), kind="stable")
 
 
 def _strategy(start: FloatArray, rng: np.random.Generator) -> Any:
@@ -112,14 +116,10 @@ def _worth(judged: Judged) -> BoolArray:
     return np.asarray(judged.violations.max(axis=1) < WORTH)
 
 
-def _scale(referee: Referee) -> float | None:
-    """Return the size of the first goal; None while nothing meets everything."""
-    front = referee.archive.front.objectives
-    return float(np.abs(front[:, 0]).min()) or 1.0 if len(front) else None
-
-
-def _cost(judged: Judged, scale: float | None) -> FloatArray:
+def _cost(judged: Judged, referee: Referee) -> FloatArray:
     """Return what is to be minimised, (n,): the first goal and the misses, or the misses alone."""
-    if scale is None:
+    front = referee.archive.front.objectives
+    if not len(front):
         return judged.total_violation
+    scale = float(np.abs(front[:, 0]).min()) or 1.0
     return np.asarray(judged.objectives[:, 0] / scale + MISS * judged.total_violation)

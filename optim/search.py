@@ -16,6 +16,7 @@ from typing import Final
 import numpy as np
 from scipy.stats import qmc
 
+from models import MODELS
 from models.conventions import FloatArray
 from optim.archive import Archive, IntArray, Judged, diverse, nondominated
 from optim.doors import open_doors
@@ -25,10 +26,9 @@ from optim.journal import Journal
 from optim.margins import Judge
 from optim.precheck import blind_spots
 from optim.progress import Progress
-from optim.quantities import OF_A_MATCH
 from optim.recommend import front_rows, nearest_rows, relaxation_rows, sorted_rows
 from optim.referee import Referee
-from optim.refine import refine
+from optim.refine import apart, ranked, refine
 from optim.requirements import Goal, Requirements
 from optim.robust import bred, decide, reach, tolerated
 from optim.space import DesignSpace
@@ -46,6 +46,9 @@ PROVE_PATIENCE: Final = 8
 PROVE_GENERATIONS: Final = 14
 LEVELS: Final = (-1.0, -0.5, 0.0, 0.5, 1.0)
 """Violations, in steps of margin, about which designs are handed from scout to prover."""
+
+SCATTERED: Final = 16
+"""Designs handed over that lie far from each other: a scout's error is not the same everywhere."""
 
 SETTLING_ROUNDS: Final = 12
 
@@ -130,7 +133,7 @@ def search(
             deciding = Referee("prove", space, rules, prove, first, journal, further=rest)
         evolve(
             deciding,
-            about_the_limits(scouting.archive, run.population),
+            handed_over(scouting, run.population),
             population=max(run.population // 2, 4),
             generations=PROVE_GENERATIONS,
             patience=PROVE_PATIENCE,
@@ -171,6 +174,13 @@ def first_sample(space: DesignSpace, count: int, rng: np.random.Generator) -> Fl
     return np.asarray(space.low + (space.high - space.low) * points[:count])
 
 
+def handed_over(scouting: Referee, count: int) -> FloatArray:
+    """Return designs for the prover: `count` about the limits, and the best of each region."""
+    known = scouting.archive.all
+    best = apart(known.designs[ranked(known, scouting)], scouting.space, SCATTERED)
+    return np.unique(np.vstack([about_the_limits(scouting.archive, count), best]), axis=0)
+
+
 def about_the_limits(archive: Archive, count: int) -> FloatArray:
     """Return `count` designs for the prover: the fronts with the limits moved both ways.
 
@@ -209,16 +219,10 @@ def settled(deciding: Referee, pick: Callable[[Judged], IntArray]) -> Judged:
 
 
 def scouted(requirements: Requirements, space: DesignSpace, model: str) -> Requirements:
-    """Return the requirements without what the scout's `model` cannot judge, nor the match.
-
-    The match is left to the prover also by a scout that could judge it: looked for among all
-    else, it fills the front better, but keeps the search out of niches where the scout errs in
-    gain, the smallest designs among them (six runs of a matched relay, DEVELOPERS.md).
-    """
-    blind = set(blind_spots(requirements, space, model))
+    """Return the requirements without what the scout's `model` cannot judge."""
+    blind = blind_spots(requirements, space, model)
     goals = requirements.goals
-    if model != requirements.run.prove:
-        blind.update(limit.label for limit in requirements.limits if limit.figure in OF_A_MATCH)
+    if not MODELS[model].gives_match:
         gain = (replace(g, name="gain") if g.name == "realized_gain" else g for g in goals)
         goals = tuple(dict.fromkeys(goal for goal in gain if goal.name != "vswr"))
     return replace(

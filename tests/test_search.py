@@ -13,10 +13,11 @@ from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from models import evaluate
+from optim.refine import apart
 from optim.run import JOURNAL, Options, run
-from optim.search import scouted
+from optim.search import handed_over, scouted
 from optim.space import DesignSpace
-from tests.search_specs import EASY, read, write
+from tests.search_specs import EASY, judging, read, write
 
 START = "from optim.cli import main; raise SystemExit(main())"
 LONGER = EASY.replace("generations = 8", "generations = 30")
@@ -123,15 +124,32 @@ def test_designs_are_judged_once_and_on_steps(whole: Path) -> None:
     assert set(np.degrees(scouted[:, 0]).round(9)) == {60.0, 90.0}
 
 
-@pytest.mark.parametrize(("prove", "left"), [("moment", True), ("ray", False)])
-def test_match_is_left_to_a_prover(tmp_path: Path, prove: str, left: bool) -> None:
+@pytest.mark.parametrize(("model", "left"), [("ray", False), ("modal", True)])
+def test_match_is_left_to_the_prover_by_a_scout_without(
+    tmp_path: Path, model: str, left: bool
+) -> None:
     # Figures of a match: VSWR, realized gain, reactance (IEEE Std 145 puts mismatch in the second).
     study = Path(__file__).parents[1] / "studies" / "matched_relay_450.toml"
-    text = study.read_text(encoding="utf-8")
-    requirements = read(tmp_path, text + f'\n[run]\nscout = "ray"\nprove = "{prove}"\n')
+    requirements = read(tmp_path, study.read_text(encoding="utf-8"))
     space = DesignSpace.from_requirements(requirements)
-    asked = scouted(requirements, space, "ray")
+    asked = scouted(requirements, space, model)
     figures = {limit.figure for limit in asked.limits}
     assert "front_to_back_db" in figures
     assert ({"vswr", "realized_gain_dbi"} & figures == set()) is left
     assert ("gain" if left else "realized_gain") in {goal.name for goal in asked.goals}
+
+
+@pytest.mark.parametrize("count", [10, 40])
+def test_the_prover_gets_the_best_of_each_region_too(tmp_path: Path, count: int) -> None:
+    with judging(tmp_path) as scouting:
+        space = scouting.space
+        shares = np.random.default_rng(3).random((300, 5))
+        scouting.judge(space.snap(space.low + shares * (space.high - space.low)))
+        given = handed_over(scouting, count)
+        known = scouting.archive.all
+        assert count < len(given) <= count + 16
+        assert set(map(bytes, given)) <= set(map(bytes, known.designs))
+        cost = known.objectives[:, 0] / scouting.archive.front.objectives[:, 0].min()
+        best = known.designs[(cost + known.total_violation).argmin()]
+        assert (given == best).all(axis=1).any()
+        assert len(apart(given, space, 16)) == 16
