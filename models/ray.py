@@ -39,9 +39,13 @@ Counts = tuple[int, int]
 
 _OWN_POINTS: Final = 9, 4
 _OTHER_POINTS: Final = 8, 4
-_MANY: Final = 72_000
-_BLOCK: Final = 16_000
-"""Points of waves and of currents that are held at once: what fits a processor's cache."""
+_PAIRS: Final = 2_000
+_BLOCK: Final = 32_000
+"""Small plates whose waves, and points whose currents are held at once: what fits a cache."""
+
+# Where memory is handed back after each large array and cleared again for the next, that takes a
+# tenth of the time. glibc keeps whatever is smaller than a block that once was freed (mallopt(3)).
+np.empty(1 << 24, dtype=np.uint8)
 
 
 def radiate(reflectors: Reflectors, frequencies_hz: FloatArray, build: Build) -> Pattern:
@@ -66,7 +70,7 @@ def radiate(reflectors: Reflectors, frequencies_hz: FloatArray, build: Build) ->
     alone = _alone(pairs[:, 4], pairs[:, 5])
     fields = np.empty((2, order.size, CUT_ANGLES.size), dtype=np.complex128)
     numbers = np.empty((5, order.size))
-    for rows, scale in _alike(_scales(pairs), _MANY // 36):
+    for rows, scale in _alike(_scales(pairs), _PAIRS):
         points = [(scale[0] * n_s, scale[1] * n_z) for n_s, n_z in (_OWN_POINTS, _OTHER_POINTS)]
         own, other = (_few(pairs[rows], some) for some in points)
         waves = own_waves(own), other_waves(other, min(2 + 4 * scale[0], 20))

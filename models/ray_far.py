@@ -72,15 +72,19 @@ def _samples(reaches: SingleArray) -> int:
 
 def _levels(reaches: SingleArray) -> int:
     """Return how many heights over the H-plane the power of sources as far as `reaches` needs."""
-    return int(np.ceil(0.42 * float(reaches.max()) + 3.2))  # by trial, for 1e-4 dB
+    return int(np.ceil(0.36 * float(reaches.max()) + 1.9))  # by trial, for 1e-4 dB
 
 
 @cache
 def _heights(count: int) -> tuple[SingleArray, SingleArray, FloatArray]:
-    """Return sinθ, cosθ and weights over the upper hemisphere, and first of all the H-plane."""
-    nodes, weights = np.polynomial.legendre.leggauss(count)
-    cosine = np.concatenate([[0.0], (nodes + 1.0) / 2.0]).astype(np.float32)
-    return np.sqrt(1.0 - cosine * cosine), cosine, np.concatenate([[0.0], weights / 2.0])
+    """Return sinθ, cosθ and weights over the upper hemisphere: the H-plane, and `count` above it.
+
+    Half of a Gauss-Legendre sum from pole to pole, as the power is even.
+    """
+    nodes, weights = np.polynomial.legendre.leggauss(2 * count + 1)
+    cosine = np.abs(nodes[count:]).astype(np.float32)
+    weights = np.concatenate([weights[count : count + 1] / 2.0, weights[count + 1 :]])
+    return np.sqrt(1.0 - cosine * cosine), cosine, weights
 
 
 def _around(
@@ -126,7 +130,11 @@ def _around(
 
 
 def _over(
-    c: Corners, moment_z: SingleArray, moment_s: SingleArray, middle: SingleArray, samples: int
+    c: Corners,
+    moment_z: SingleArray,
+    moment_s: SingleArray,
+    middle: SingleArray,
+    samples: int,
 ) -> ComplexArray:
     """Return f on the E-plane cut, (n, n_angle)."""
     n, _, n_s, n_z = moment_z.shape
@@ -138,7 +146,11 @@ def _over(
     height = c.z[0].T[:, :, None] * cosine
     # Moments along z: even for the current along z, odd for that along s. Both plates alike.
     level = np.stack(
-        [(2.0 * forward) * np.cos(height), (2.0 * half * cosine)[:, None] * np.sin(height)], axis=1
+        [
+            (2.0 * forward) * np.cos(height),
+            (2.0 * half * cosine)[:, None] * np.sin(height),
+        ],
+        axis=1,
     )
     sums = (rows @ waves).reshape(2, n, 2, 2, n_z, -1)
     sums *= level[:, None]

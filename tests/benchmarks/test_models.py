@@ -19,8 +19,8 @@ from models.conventions import C0
 from tests.test_against_finite_elements import finite_elements
 
 
-def best(call: Callable[[], object], times: int) -> float:
-    """Return the least processor time of a call, s."""
+def sorted_times(call: Callable[[], object], times: int) -> list[float]:
+    """Return the processor times of a call, s, least first."""
     seconds = []
     with threadpool_limits(1):
         call()
@@ -28,7 +28,12 @@ def best(call: Callable[[], object], times: int) -> float:
             start = time.process_time()
             call()
             seconds.append(time.process_time() - start)
-    return min(seconds)
+    return sorted(seconds)
+
+
+def best(call: Callable[[], object], times: int) -> float:
+    """Return the least processor time of a call, s."""
+    return sorted_times(call, times)[0]
 
 
 def designs(n: int, low: float, high: float) -> Reflectors:
@@ -46,13 +51,16 @@ def designs(n: int, low: float, high: float) -> Reflectors:
 
 def test_ray_in_a_generation() -> None:
     many, frequencies = designs(200, 0.6, 2.6), C0 * np.linspace(0.9, 1.1, 5)
-    seconds = best(lambda: evaluate(many, frequencies, model="ray"), 12)
+    times = sorted_times(lambda: evaluate(many, frequencies, model="ray"), 25)
     one = best(lambda: evaluate(many[0], C0, model="ray"), 12)
+    few = best(lambda: evaluate(many[:25], frequencies, model="ray"), 25)
+    least, median = times[0] / 1000.0, times[12] / 1000.0
     sys.stdout.write(
-        f"\nray: {1000.0 / seconds:.0f} pairs a second, {1e6 * seconds / 1000:.0f} µs\n"
+        f"\nray: {1.0 / least:.0f} pairs a second at best, {1.0 / median:.0f} in the median; "
+        f"{1e6 * least:.0f} and {1e6 * median:.0f} µs; 25 alone {1e6 * few / 125.0:.0f} µs\n"
     )
     # A batch is what makes it fast: a pair in it costs a small part of one alone.
-    assert seconds / 1000.0 < 0.1 * one
+    assert least < 0.1 * one
 
 
 def test_moment_near_one_wavelength() -> None:
