@@ -44,6 +44,10 @@ FORMAT: Final = 1
 """Version of the layout of the file."""
 
 
+# Data and length, not the time of the change: several times as fast where it exists.
+_to_disk: Final = getattr(os, "fdatasync", os.fsync)
+
+
 class JournalError(Exception):
     """The journal cannot be used; the message says why and what to do."""
 
@@ -217,7 +221,7 @@ class Journal:
         with _explained(self._path, "written"):
             while rest:
                 rest = rest[self._file.write(rest) :]
-            os.fsync(self._file.fileno())
+            _to_disk(self._file.fileno())
 
 
 def read_header(path: Path) -> Header | None:
