@@ -77,7 +77,7 @@ def folder(tmp_path_factory: pytest.TempPathFactory) -> Path:
         ("evaluations", {"image": -1}),
         ("evaluations", "many"),
         ("parts/front", ...),
-        ("parts/front/rows", 7),
+        ("parts/front/rows", 997),
         ("parts/front/columns/margins", 7),
         ("parts/front/columns", {}),
         ("parts/front/numbers", "AAAA"),
