@@ -236,11 +236,11 @@ def _written(judged: Judged) -> dict[str, Any]:
 
 
 def _read(part: _Part, columns: dict[str, int]) -> Judged:
-    if list(part.columns.items()) != list(columns.items()):
-        msg = "numbers of other requirements"
-        raise ValueError(msg)
     total = sum(columns.values())
     matrix = decode(part.numbers, part.rows) if part.rows else np.empty((0, total))
+    if list(part.columns.items()) != list(columns.items()) or matrix.shape[1] != total:
+        msg = "numbers of other requirements"
+        raise ValueError(msg)
     pieces = np.split(matrix, np.cumsum(list(columns.values()))[:-1], axis=1)
     # Keys are the bytes of rows, which must lie in one piece.
     return Judged(

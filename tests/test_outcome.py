@@ -78,6 +78,8 @@ def folder(tmp_path_factory: pytest.TempPathFactory) -> Path:
         ("evaluations", "many"),
         ("parts/front", ...),
         ("parts/front/rows", 997),
+        ("parts/front/numbers", ""),
+        ("parts/nearest/rows", 3),
         ("parts/front/columns/margins", 7),
         ("parts/front/columns", {}),
         ("parts/front/numbers", "AAAA"),
