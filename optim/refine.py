@@ -27,13 +27,16 @@ FEWEST: Final = 2
 STARTS: Final = 4
 GENERATIONS: Final = 40
 
+HALVED: Final = 20
+"""Generations after which the better half of the strategies goes on."""
+
 APART: Final = 0.2
 """Share of the range of some variable by which designs are apart."""
 
 DEVIATION: Final = 0.06
 """First standard deviation, as a share of each variable's range."""
 
-STILL: Final = 1e-3
+STILL: Final = 2e-3
 """Deviation at which a strategy has come to rest."""
 
 MISS: Final = 1.0
@@ -60,15 +63,21 @@ def refine(referee: Referee, *, rng: np.random.Generator, progress: Progress) ->
     if free.sum() < FEWEST:
         return
     starts = apart(known.designs[ranked(known, referee)], space, STARTS)
+    scale = _scale(referee)
     low, extent = space.low[free], (space.high - space.low)[free]
     strategies = [_strategy((start[free] - low) / extent, rng) for start in starts]
     with progress.stage(f"refine ({referee.model})", GENERATIONS) as told:
-        for _ in range(GENERATIONS):
+        for generation in range(GENERATIONS):
+            if generation == HALVED:
+                strategies.sort(key=lambda strategy: float(strategy.best.f))
+                strategies = strategies[: (len(strategies) + 1) // 2]
             asked = [strategy.ask() for strategy in strategies]
             shares = np.concatenate(asked)
             designs = np.tile(starts[0], (len(shares), 1))
             designs[:, free] = low + shares * extent
-            costs = _cost(referee.judge(space.snap(designs), _worth), referee)
+            judged = referee.judge(space.snap(designs), _worth)
+            scale = scale or _scale(referee)
+            costs = _cost(judged, scale)
             ends = np.cumsum([len(some) for some in asked])
             for strategy, some, end in zip(strategies, asked, ends, strict=True):
                 strategy.tell(some, costs[end - len(some) : end].tolist())
@@ -92,7 +101,7 @@ def apart(designs: FloatArray, space: DesignSpace, count: int) -> FloatArray:
 
 def ranked(judged: Judged, referee: Referee) -> IntArray:
     """Return the rows of `judged` from the best to the worst."""
-    return np.argsort(_cost(judged, referee), kind="stable")
+    return np.argsort(_cost(judged, _scale(referee)), kind="stable")
 
 
 def _strategy(start: FloatArray, rng: np.random.Generator) -> Any:
@@ -116,10 +125,14 @@ def _worth(judged: Judged) -> BoolArray:
     return np.asarray(judged.violations.max(axis=1) < WORTH)
 
 
-def _cost(judged: Judged, referee: Referee) -> FloatArray:
-    """Return what is to be minimised, (n,): the first goal and the misses, or the misses alone."""
+def _scale(referee: Referee) -> float | None:
+    """Return the best of the first goal; None while nothing meets everything."""
     front = referee.archive.front.objectives
-    if not len(front):
+    return float(np.abs(front[:, 0]).min()) or 1.0 if len(front) else None
+
+
+def _cost(judged: Judged, scale: float | None) -> FloatArray:
+    """Return what is to be minimised, (n,): the first goal and the misses, or the misses alone."""
+    if scale is None:
         return judged.total_violation
-    scale = float(np.abs(front[:, 0]).min()) or 1.0
     return np.asarray(judged.objectives[:, 0] / scale + MISS * judged.total_violation)
