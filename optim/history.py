@@ -15,9 +15,10 @@ from typing import Final
 import numpy as np
 from moocore import hypervolume
 
+from models import MODELS
 from models.conventions import FloatArray
 from optim.archive import nondominated
-from optim.journal import read_batches, read_header
+from optim.journal import JournalError, read_batches, read_header
 
 __all__ = ["STAGES", "Course", "courses"]
 
@@ -62,9 +63,15 @@ def courses(journal: Path) -> list[Course]:
     if header is None:
         return []
     batches: dict[str, list[FloatArray]] = {}
+    models = {"scout": header.scout, "prove": header.prove}
+    sound = set(models.values()) <= {*MODELS, "none"}
     for stage, numbers in read_batches(journal, header):
         batches.setdefault(stage, []).append(numbers)
-    models = {"scout": header.scout, "prove": header.prove}
+        judged = [not name.startswith("worst ") for name in header.columns[stage]]
+        sound &= bool(np.isfinite(numbers[:, judged]).all())
+    if not sound:
+        msg = f"{journal}: holds models or numbers that no search writes"
+        raise JournalError(msg)
     return [
         course_of(stage, models[stage], header.columns[stage], batches[stage])
         for stage in STAGES

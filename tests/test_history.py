@@ -1,11 +1,13 @@
 """The course of a search: hypervolume against its closed form, shares against a count."""
 
+import json
 from pathlib import Path
 
 import numpy as np
 import pytest
 
 from optim.history import AIR, course_of, courses, volumes
+from optim.journal import JournalError, decode, encode
 from optim.run import Options, run
 from tests.search_specs import write
 
@@ -38,6 +40,23 @@ def test_of_a_run(tmp_path: Path) -> None:
     assert course.designs[-1] <= result.found.evaluations["image"]
     assert np.all(np.diff(course.volume) >= -1e-12)
     assert course.volume[-1] == pytest.approx(1.0)
+
+
+@pytest.mark.parametrize("change", ["scout", "numbers"])
+def test_what_no_search_writes_is_told(tmp_path: Path, change: str) -> None:
+    run(write(tmp_path), Options(out=tmp_path / "run", jobs=1, quiet=True))
+    path = tmp_path / "run" / "journal.jsonl"
+    header, batch, *rest = path.read_text().splitlines(keepends=True)
+    if change == "scout":
+        header = header.replace('"scout":"image"', '"scout":"\\ud800"')
+    else:
+        entry = json.loads(batch)
+        numbers = decode(entry["numbers"], len(entry["designs"]))
+        numbers[0, 0] = -np.inf
+        batch = json.dumps(entry | {"numbers": encode(numbers)}) + "\n"
+    path.write_text("".join([header, batch, *rest]))
+    with pytest.raises(JournalError, match="no search writes"):
+        courses(path)
 
 
 def test_without_a_journal(tmp_path: Path) -> None:
