@@ -18,6 +18,7 @@ from models import MODELS, Reflectors, evaluate
 from models.build import drag_coefficient, mass, wind_load
 from models.conventions import C0
 from optim.margins import SIZES
+from optim.quantities import OF_A_MATCH
 from optim.requirements import Limit, Requirements
 from optim.space import DesignSpace
 from optim.units import VARIABLES
@@ -26,8 +27,6 @@ __all__ = ["Finding", "aperture_gain_dbi", "blind_spots", "findings"]
 
 UNIFORM_BEAMWIDTH_DEG: Final = 51.0
 """Half-power beamwidth of a uniform aperture one wavelength wide (derived: 50.8°); a rule here."""
-
-_MATCH_FIGURES: Final = frozenset({"vswr", "realized_gain_dbi", "reactance_ohm"})
 
 
 @dataclass(frozen=True)
@@ -72,7 +71,7 @@ def blind_spots(requirements: Requirements, space: DesignSpace, model: str) -> l
         limit.label
         for limit in limits
         if not np.isfinite(getattr(figures, limit.figure)).all()
-        or (limit.figure in _MATCH_FIGURES and not honest)
+        or (limit.figure in OF_A_MATCH and not honest)
     ]
 
 

@@ -9,7 +9,6 @@ what lies behind it.
 
 from __future__ import annotations
 
-from collections.abc import Callable
 from dataclasses import dataclass, field, replace
 from typing import Final
 
@@ -18,7 +17,7 @@ from scipy.stats import qmc
 
 from models import MODELS
 from models.conventions import FloatArray
-from optim.archive import Archive, IntArray, Judged, diverse, nondominated
+from optim.archive import Archive, Judged, diverse, nondominated
 from optim.doors import open_doors
 from optim.evaluate import Evaluator
 from optim.evolve import evolve
@@ -31,6 +30,7 @@ from optim.referee import Referee
 from optim.refine import apart, ranked, refine
 from optim.requirements import Goal, Requirements
 from optim.robust import bred, decide, reach, tolerated
+from optim.settle import settled
 from optim.space import DesignSpace
 from optim.tolerance import Builds, Spread
 
@@ -49,8 +49,6 @@ LEVELS: Final = (-1.0, -0.5, 0.0, 0.5, 1.0)
 
 SCATTERED: Final = 16
 """Designs handed over that lie far from each other: a scout's error is not the same everywhere."""
-
-SETTLING_ROUNDS: Final = 12
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)
@@ -199,23 +197,6 @@ def about_the_limits(archive: Archive, count: int) -> FloatArray:
         nearest = np.argsort(judged.total_violation, kind="stable")
         rows = np.concatenate([rows, nearest[~np.isin(nearest, rows)][: count - len(rows)]])
     return judged.designs[rows]
-
-
-def settled(deciding: Referee, pick: Callable[[Judged], IntArray]) -> Judged:
-    """Return the designs that `pick` takes, all of them judged at all frequencies.
-
-    What it takes is judged at the rest of them, and it picks again with what that showed, until
-    nothing is new: a design that fails there makes room for the next.
-    """
-    for _ in range(SETTLING_ROUNDS):
-        known = deciding.archive.all
-        chosen = known[pick(known)]
-        if deciding.whole(chosen).all():
-            return chosen
-        deciding.judge(chosen.designs, lambda judged: np.ones(len(judged), dtype=bool))
-    known = deciding.archive.all
-    known = known[deciding.whole(known)]
-    return known[pick(known)]
 
 
 def scouted(requirements: Requirements, space: DesignSpace, model: str) -> Requirements:

@@ -215,7 +215,8 @@ def test_long_plates_of_the_full_wave_model() -> None:
     lossless = Build(conductivity=np.inf)
     there = moment.radiate(designs, np.array([C0]), lossless, feed="sinusoidal")
     here = radiate(designs, np.array([C0]))
-    np.testing.assert_allclose(here.resistance, there.resistance, atol=0.3)
+    # Its first grids stand where they vouch for 0.05 dB: 0.65 % here, 0.05 % on finer ones.
+    np.testing.assert_allclose(here.resistance, there.resistance, rtol=0.0075)
     np.testing.assert_allclose(here.reactance, there.reactance, atol=0.6)
 
 
