@@ -24,10 +24,10 @@ __all__ = ["apart", "ranked", "refine"]
 FEWEST: Final = 2
 """Free variables; with less there is no ridge."""
 
-STARTS: Final = 4
+STARTS: Final = 6
 GENERATIONS: Final = 40
 
-HALVED: Final = 20
+HALVED: Final = 12
 """Generations after which the better half of the strategies goes on."""
 
 APART: Final = 0.2

@@ -43,11 +43,11 @@ SCOUT_PATIENCE: Final = 12
 PROVE_PATIENCE: Final = 8
 """Generations within which a front must move for the search to go on."""
 
-PROVE_GENERATIONS: Final = 14
+PROVE_GENERATIONS: Final = 10
 LEVELS: Final = (-1.0, -0.5, 0.0, 0.5, 1.0)
 """Violations, in steps of margin, about which designs are handed from scout to prover."""
 
-SCATTERED: Final = 16
+SCATTERED: Final = 48
 """Designs handed over that lie far from each other: a scout's error is not the same everywhere."""
 
 
