@@ -48,8 +48,8 @@ _COUNT: Final = 16_384
 
 def transition(x: ArrayLike) -> ComplexArray:
     """Return F(x) = 2j√x·e^{jx} ∫_√x^∞ e^{−jt²} dt of the uniform theory, x >= 0."""
-    root = np.sqrt(np.asarray(x, dtype=np.float64))
-    return np.asarray(np.sqrt(np.pi) * np.exp(0.25j * np.pi) * root * _still_tail(root) * 2.0)
+    zeta = np.sqrt(np.asarray(x, dtype=np.float64))
+    return np.asarray(np.sqrt(np.pi) * np.exp(0.25j * np.pi) * zeta * _still_tail(zeta) * 2.0)
 
 
 def _still_tail(zeta: NDArray[np.float64]) -> ComplexArray:

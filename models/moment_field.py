@@ -17,7 +17,7 @@ import numpy as np
 from models.conventions import ComplexArray, FloatArray
 from models.edges import SingleArray, WaveArray, turn
 from models.moment_plates import Grid
-from models.pattern import CUT_ANGLES
+from models.pattern import CUT_ANGLES, cosine_interpolation, middles
 
 __all__ = ["Sky", "plates_far_field"]
 
@@ -49,11 +49,11 @@ class Sky:
     def of(cls, order: int) -> Sky:
         """Return samples for fields with harmonics up to about `order`."""
         count = order + 6
-        cut = _middles(count)
+        cut = middles(count)
         # Gauss-Legendre over cosθ, upper half; equal parts of φ.
         nodes, weights = np.polynomial.legendre.leggauss(order + order % 2)
         upper = nodes > 0.0
-        theta, phi = np.arccos(nodes[upper]), _middles(order)
+        theta, phi = np.arccos(nodes[upper]), middles(order)
         flat, slope = np.full(count, np.pi / 2.0), np.abs(np.pi / 2.0 - cut)
         behind = np.where(_forward(cut) < 0.0, np.pi, 0.0)
         return cls(
@@ -61,14 +61,14 @@ class Sky:
             theta=np.concatenate([flat, slope, np.repeat(theta, phi.size)]),
             phi=np.concatenate([cut, behind, np.tile(phi, theta.size)]),
             weights=np.repeat(weights[upper] / phi.size, phi.size),
-            interpolation=_cosine_interpolation(count, CUT_ANGLES).T,
+            interpolation=cosine_interpolation(count, CUT_ANGLES).T,
         )
 
     def cuts(self, theta: ComplexArray) -> tuple[ComplexArray, ComplexArray]:
         """Return f_θ on the H- and E-plane cuts at `CUT_ANGLES` from samples (n, n_dir)."""
         h_cut, e_cut = theta[:, : self.count], theta[:, self.count : 2 * self.count]
         # Along the cut's own tangent the field is smooth through θ = 0; E_θ changes sign there.
-        tangent = e_cut * _forward(_middles(self.count))
+        tangent = e_cut * _forward(middles(self.count))
         e_field = np.matmul(tangent, self.interpolation) * _forward(CUT_ANGLES)
         return np.matmul(h_cut, self.interpolation), e_field
 
@@ -88,25 +88,9 @@ class Sky:
         return np.asarray(square @ self.weights)
 
 
-def _middles(count: int) -> FloatArray:
-    """Return the middles of `count` equal parts of 0 to π, radians."""
-    return np.asarray((np.arange(count) + 0.5) * (np.pi / count))
-
-
 def _forward(angles: FloatArray) -> FloatArray:
     """Return 1 ahead of the antenna (up to and with 90° off boresight), −1 behind."""
     return np.where(angles - np.pi / 2.0 > 1e-9, -1.0, 1.0)
-
-
-def _cosine_interpolation(count: int, angles: FloatArray) -> FloatArray:
-    """Return the matrix from samples in the middles to `angles`, (n_angle, count).
-
-    Exact for even functions of period 2π with harmonics below `count`.
-    """
-    order = np.arange(count)
-    weight = np.where(order == 0, 1.0, 2.0) / count
-    samples = np.cos(order[:, None] * _middles(count))
-    return np.asarray((np.cos(angles[:, None] * order) * weight) @ samples)
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)

@@ -24,7 +24,7 @@ from models.conventions import FloatArray
 from optim.cluster import Cluster, ClusterError, here, refuse_another
 from optim.requirements import Requirements
 
-__all__ = ["CHUNK", "Evaluator"]
+__all__ = ["CHUNK", "Evaluator", "chunk_count", "leave_interrupts_to_main"]
 
 Job = tuple[FloatArray, str, Build, Terms]
 
@@ -96,7 +96,7 @@ class Evaluator:
             "loky",
             n_jobs=self._jobs,
             inner_max_num_threads=1,
-            initializer=_leave_interrupts_to_main,
+            initializer=leave_interrupts_to_main,
             idle_worker_timeout=IDLE,
         )
         return Figures.concatenate(list(pool(delayed(_figures)(chunk, *job) for chunk in chunks)))
@@ -158,6 +158,6 @@ def _one_thread() -> Callable[[], Any]:
     return lambda: controller.limit(limits=1)
 
 
-def _leave_interrupts_to_main() -> None:
+def leave_interrupts_to_main() -> None:
     """Let Ctrl-C reach the main process only, which then ends its workers."""
     signal.signal(signal.SIGINT, signal.SIG_IGN)

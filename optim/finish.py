@@ -7,12 +7,12 @@ folder gives the same bytes. The parts are written side by side on several proce
 from __future__ import annotations
 
 import shlex
-import signal
 from pathlib import Path
 from typing import Final
 
 from joblib import Parallel, delayed, parallel_config
 
+from optim.evaluate import leave_interrupts_to_main
 from optim.outcome import read_outcome
 from optim.papers import write_run
 from optim.plots import FOLDER as PICTURES
@@ -44,7 +44,7 @@ def finish(folder: Path, jobs: int = 1) -> Path:
     current = is_current(folder, len(result.shown()[0]))
     parts = [part for part in PARTS if part != "patterns" or not current]
     try:
-        with parallel_config("loky", inner_max_num_threads=1, initializer=_deaf_to_interrupts):
+        with parallel_config("loky", inner_max_num_threads=1, initializer=leave_interrupts_to_main):
             Parallel(n_jobs=min(jobs, len(PARTS)), batch_size=1)(
                 delayed(_write)(folder, part) for part in parts
             )
@@ -53,11 +53,6 @@ def finish(folder: Path, jobs: int = 1) -> Path:
         again = shlex.join(["apexfront", "report", str(folder)])
         msg = f"interrupted; what the search found is saved. Go on with: {again}"
         raise KeyboardInterrupt(msg) from interrupt
-
-
-def _deaf_to_interrupts() -> None:
-    """Let Ctrl-C reach the main process only, which then ends its workers."""
-    signal.signal(signal.SIGINT, signal.SIG_IGN)
 
 
 def _write(folder: Path, part: str) -> None:

@@ -23,7 +23,7 @@ from optim.journal import JournalError, read_batches, read_header
 __all__ = ["STAGES", "Course", "courses"]
 
 STAGES: Final = ("scout", "prove")
-"""Stages of a journal that search; the others check what these found."""
+"""Stages of a journal that search; what else is in it are antennas built off their dimensions."""
 
 AIR: Final = 0.05
 """The reference lies this share of a goal's extent beyond the worst."""

@@ -257,8 +257,9 @@ def parse(schema: type[FileT], source: Source) -> tuple[FileT, dict[str, Fault]]
     """
     own = next(mark for mark in KINDS if mark in schema.model_fields)
     if own not in source.content:
-        for mark in KINDS.keys() & source.content.keys():
-            raise SpecError([Fault(source.name, "", KINDS[mark], KINDS[own])])
+        other = next((mark for mark in KINDS if mark in source.content), None)
+        if other is not None:
+            raise SpecError([Fault(source.name, "", KINDS[other], KINDS[own])])
     try:
         return schema.model_validate(source.content), {}
     except ValidationError as error:

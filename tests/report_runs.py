@@ -1,6 +1,7 @@
 """Small finished runs on the image model, with texts that mean harm, for tests of the report."""
 
 from pathlib import Path
+from typing import Any
 
 from optim.outcome import read_outcome
 from optim.report import make_report
@@ -26,3 +27,16 @@ def finished(place: Path, text: str = EASY, title: str = HOSTILE) -> Path:
 def missed(place: Path) -> Path:
     """Return the folder of a run that nothing met."""
     return finished(place, IMPOSSIBLE)
+
+
+def changed(tree: Any, path: tuple[str | int, ...], value: object) -> Any:
+    """Change what lies at `path` in `tree`, an ellipsis takes it out; return the tree."""
+    *way, last = path
+    node = tree
+    for key in way:
+        node = node[key]
+    if value is ...:
+        del node[last]
+    else:
+        node[last] = value
+    return tree

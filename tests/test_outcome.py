@@ -12,6 +12,7 @@ from optim.journal import decode, encode
 from optim.outcome import FILE, REQUIREMENTS, read_outcome, write_outcome
 from optim.run import Options, run
 from optim.tolerance import Influence, Spread
+from tests.report_runs import changed
 from tests.search_specs import EASY, write
 
 
@@ -96,14 +97,8 @@ def folder(tmp_path_factory: pytest.TempPathFactory) -> Path:
 def test_hand_edited_files_are_told(folder: Path, path: str, value: object) -> None:
     before = (folder / FILE).read_bytes()
     content = json.loads(before)
-    *way, last = (int(key) if key.isdigit() else key for key in path.split("/"))
-    node = content
-    for key in way:
-        node = node[key]
-    if value is ...:
-        del node[last]
-    else:
-        node[last] = value
+    way = tuple(int(key) if key.isdigit() else key for key in path.split("/"))
+    changed(content, way, value)
     read_outcome(folder)
     try:
         (folder / FILE).write_text(json.dumps(content), encoding="utf-8")

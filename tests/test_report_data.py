@@ -3,7 +3,6 @@
 import json
 from dataclasses import replace
 from pathlib import Path
-from typing import Any
 
 import numpy as np
 import pytest
@@ -16,7 +15,7 @@ from optim.outcome import read_outcome
 from optim.report_data import FILE, compute, is_current, read_data, shown_points, write_data
 from optim.requirements import Band
 from optim.result import Result
-from tests.report_runs import finished
+from tests.report_runs import changed, finished
 
 
 @pytest.fixture(scope="module")
@@ -68,19 +67,6 @@ def test_scout_is_asked_where_another_model_proved(result: Result) -> None:
 )
 def test_points_reach_from_edge_to_edge(band: Band, megahertz: list[float]) -> None:
     assert (shown_points(band) / 1e6).tolist() == pytest.approx(megahertz)
-
-
-def changed(tree: Any, path: tuple[str | int, ...], value: object) -> Any:
-    """Change what lies at `path` in `tree`, an ellipsis takes it out; return the tree."""
-    *way, last = path
-    node = tree
-    for key in way:
-        node = node[key]
-    if value is ...:
-        del node[last]
-    else:
-        node[last] = value
-    return tree
 
 
 @pytest.fixture
